@@ -89,7 +89,7 @@ int main(int argc, char** argv) {
     const lastscan::v1::Settings settings = path.empty() ? lastscan::service::EmbeddedSettings()
                                                          : lastscan::service::ReadSettings(path);
     if (check) {
-      std::printf("%s: settings are good\n", path.empty() ? "no file" : path.c_str());
+      std::printf("%s: settings are good\n", path.empty() ? "without a file" : path.c_str());
       return 0;
     }
     Run(settings);

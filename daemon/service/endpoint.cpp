@@ -133,4 +133,8 @@ void Bind(zmq::socket_t& socket, const std::string& endpoint) {
   }
 }
 
+void RemoveSocketFile(const std::string& endpoint) {
+  if (endpoint.compare(0, kIpc.size(), kIpc) == 0) ::unlink(endpoint.c_str() + kIpc.size());
+}
+
 }  // namespace lastscan::service

@@ -27,4 +27,8 @@ std::optional<std::string> ComplaintAboutEndpoint(const std::string& endpoint);
 // REQUIRES: no other thread makes files meanwhile (the process's umask changes).
 void Bind(zmq::socket_t& socket, const std::string& endpoint);
 
+// Removes the socket file of `endpoint`, if it has one.
+// REQUIRES: this process is bound to it still, so that it cannot be another's.
+void RemoveSocketFile(const std::string& endpoint);
+
 }  // namespace lastscan::service

@@ -46,7 +46,8 @@ std::string_view View(const zmq::message_t& frame) {
 }  // namespace
 
 Service::Service(const v1::Settings& settings, ledger::Ledger& book)
-    : context_(1),
+    : settings_(settings.service()),
+      context_(1),
       requests_socket_(context_, zmq::socket_type::router),
       broadcast_socket_(context_, zmq::socket_type::pub),
       requests_(settings, book, clocks_, [this](const v1::Advice& advice) { Broadcast(advice); }) {
@@ -62,7 +63,10 @@ Service::Service(const v1::Settings& settings, ledger::Ledger& book)
   if (requests_.resumed() > 0) spdlog::info("took up {} runs", requests_.resumed());
 }
 
-Service::~Service() = default;
+Service::~Service() {
+  RemoveSocketFile(settings_.request_endpoint());
+  RemoveSocketFile(settings_.broadcast_endpoint());
+}
 
 void Service::Broadcast(const v1::Advice& advice) {
   const std::string topic = advice.instrument() + "/" + advice.run();

@@ -28,6 +28,7 @@ class Service {
   void Broadcast(const v1::Advice& advice);
   int MillisecondsToWait(double alive_due) const;
 
+  v1::ServiceSettings settings_;
   zmq::context_t context_;
   zmq::socket_t requests_socket_;
   zmq::socket_t broadcast_socket_;

@@ -24,9 +24,6 @@ const std::vector<std::string_view> kConventions = {"height-over-rms", "height-o
                                                     "peak-to-peak"};
 const std::vector<std::string_view> kLevels = {"trace", "debug", "info", "warn", "error"};
 
-// Strictly between 0 and 1, so far as a bound can say so.
-constexpr Bounds kChance = {1e-9, 1 - 1e-9};
-
 v1::Settings Unplaced() {
   v1::Settings settings;
   *settings.mutable_engine() = engine::DefaultSettings();
@@ -56,6 +53,8 @@ v1::Settings Placed(v1::Settings settings) {
 }
 
 void ReadGoal(SettingsTable& table, v1::Goal* goal) {
+  // Windows without a kind can only mean one; the others need to be named.
+  if (table.Has("windows") && !table.Has("kind")) goal->set_kind(v1::WEAKEST_WINDOW);
   int kind = goal->kind() - 1;
   table.Read("kind", kGoalKinds, &kind);
   goal->set_kind(static_cast<v1::GoalKind>(kind + 1));
@@ -141,10 +140,10 @@ void ReadEngine(SettingsTable& table, v1::EngineSettings* engine) {
   table.Read("false_confirmation", &false_confirmation, {1e-6, 0.2});
   engine->set_false_confirmation(false_confirmation);
   double out_of_reach = engine->out_of_reach_chance();
-  table.Read("out_of_reach_chance", &out_of_reach, kChance);
+  table.Read("out_of_reach_chance", &out_of_reach, {1e-6, 0.49});
   engine->set_out_of_reach_chance(out_of_reach);
   double extension = engine->longest_extension();
-  table.Read("longest_extension", &extension, {1, 1e6});
+  table.Read("longest_extension", &extension, {1, 1000});
   engine->set_longest_extension(extension);
   table.Close();
 }

@@ -28,6 +28,9 @@ class SettingsTable {
   SettingsTable(const toml::table& table, std::string name, std::string path)
       : table_(table), name_(std::move(name)), path_(std::move(path)) {}
 
+  // Is the key there? It is not read by this.
+  bool Has(std::string_view key) const { return table_.contains(key); }
+
   // Each leaves `value` alone when the key is absent, and throws SettingsError
   // when it is there with a wrong type or a value outside `bounds`. A number may
   // be written with or without a decimal point where it may have one.
