@@ -39,6 +39,7 @@ int FeedOnce(const FeedOptions& options) {
   bool printed = false;
   if (!files.empty()) {
     Connection connection(options.endpoint);
+    StampUndated(files);
     if (options.final) MarkFinal(files);
     Progress progress("sending file", files.size());
     for (std::size_t i = 0; i < files.size(); ++i) {

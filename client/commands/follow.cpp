@@ -188,6 +188,9 @@ class Follower {
       candidate.reason = error.what();
       return false;
     }
+    v1::Snapshot& snapshot = file.recording.snapshot;
+    // It was exported when it was last changed, give or take the writing.
+    if (!snapshot.has_recorded_at()) *snapshot.mutable_recorded_at() = ChangedAt(candidate.state);
     return true;
   }
 

@@ -65,19 +65,14 @@ std::string Saving(const std::optional<v1::Advice>& first_enough, const v1::Advi
   return text;
 }
 
-// When the snapshot after `scans` of `total` scans would have been taken. A run
-// whose time per scan nobody knows has no times but that of its end.
-void SetTime(v1::Snapshot& snapshot, std::uint64_t scans, std::uint64_t total,
-             const google::protobuf::Timestamp& end, std::optional<double> seconds_per_scan) {
+// When the snapshot after `scans` of `total` scans would have been taken. Where
+// nobody knows the time of a scan all are stamped alike, which says nothing of it.
+google::protobuf::Timestamp TimeOf(std::uint64_t scans, std::uint64_t total,
+                                   const google::protobuf::Timestamp& end,
+                                   double seconds_per_scan) {
   using google::protobuf::util::TimeUtil;
-  *snapshot.mutable_recorded_at() = end;
-  if (seconds_per_scan) {
-    const double before = *seconds_per_scan * static_cast<double>(total - scans);
-    *snapshot.mutable_recorded_at() =
-        end - TimeUtil::MillisecondsToDuration(static_cast<std::int64_t>(before * 1000));
-  } else if (scans < total) {
-    snapshot.clear_recorded_at();
-  }
+  const double before = seconds_per_scan * static_cast<double>(total - scans);
+  return end - TimeUtil::MillisecondsToDuration(std::llround(before * 1000));
 }
 
 int RetraceRun(const RetraceOptions& options) {
@@ -97,11 +92,10 @@ int RetraceRun(const RetraceOptions& options) {
   }
   if (!options.facts.scans_planned()) facts.set_scans_planned(total);
   if (!facts.has_recorded_at()) {
-    facts.mutable_recorded_at()->set_seconds(std::time(nullptr));
+    *facts.mutable_recorded_at() = ChangedAt(StateOf(options.path));
   }
   const google::protobuf::Timestamp end = facts.recorded_at();
-  const std::optional<double> seconds_per_scan =
-      facts.has_seconds_per_scan() ? std::optional(facts.seconds_per_scan()) : std::nullopt;
+  const double seconds_per_scan = facts.has_seconds_per_scan() ? facts.seconds_per_scan() : 0;
 
   AdvicePrinter printer(options.json);
   std::unique_ptr<Adviser> adviser;
@@ -118,7 +112,7 @@ int RetraceRun(const RetraceOptions& options) {
   for (std::size_t i = 0; i < looks.size(); ++i) {
     progress.At(i);
     formats::Recording look = retrace.AdvanceTo(looks[i]);
-    SetTime(look.snapshot, looks[i], total, end, seconds_per_scan);
+    *look.snapshot.mutable_recorded_at() = TimeOf(looks[i], total, end, seconds_per_scan);
     look.snapshot.set_final(looks[i] == total);
     if (writer) writer->Write(look);
     if (!adviser) continue;

@@ -1,8 +1,11 @@
 // The files of runs: see run_files.h.
 #include "commands/run_files.h"
 
+#include <google/protobuf/util/time_util.h>
+
 #include <algorithm>
 #include <filesystem>
+#include <map>
 #include <tuple>
 
 #include "commands/command.h"
@@ -73,9 +76,26 @@ void SortByScans(std::vector<RunFile>& files) {
 
 void EnsureSamples(RunFile& file, const GoalOptions& goal, const SnapshotOptions& facts) {
   if (file.recording.samples.empty()) {
-    const bool final = file.recording.snapshot.final();
-    file.recording = ReadRunFile(file.path, file.run, goal, facts);
-    file.recording.snapshot.set_final(final);
+    file.recording.samples = ReadRunFile(file.path, file.run, goal, facts).samples;
+  }
+}
+
+google::protobuf::Timestamp ChangedAt(const FileState& state) {
+  return google::protobuf::util::TimeUtil::NanosecondsToTimestamp(state.changed_ns);
+}
+
+void StampUndated(std::vector<RunFile>& files) {
+  std::map<std::string, std::int64_t> oldest;  // by run
+  for (const RunFile& file : files) {
+    const auto [found, is_new] =
+        oldest.try_emplace(file.recording.snapshot.run(), StateOf(file.path).changed_ns);
+    if (!is_new) found->second = std::min(found->second, StateOf(file.path).changed_ns);
+  }
+  for (RunFile& file : files) {
+    v1::Snapshot& snapshot = file.recording.snapshot;
+    if (!snapshot.has_recorded_at()) {
+      *snapshot.mutable_recorded_at() = ChangedAt({0, oldest[snapshot.run()]});
+    }
   }
 }
 

@@ -5,9 +5,12 @@
 // files unless --run says otherwise.
 #pragma once
 
+#include <google/protobuf/timestamp.pb.h>
+
 #include <string>
 #include <vector>
 
+#include "commands/follow_journal.h"
 #include "commands/goal_options.h"
 #include "commands/terminal.h"
 #include "formats/recording.h"
@@ -48,6 +51,14 @@ void SortByScans(std::vector<RunFile>& files);
 // memory stays bounded; this reads those of `file` again where they are missing.
 // Throws formats::Unreadable.
 void EnsureSamples(RunFile& file, const GoalOptions& goal, const SnapshotOptions& facts);
+
+// When a file last changed, as the time of a snapshot that states none.
+google::protobuf::Timestamp ChangedAt(const FileState& state);
+
+// Gives files that state no time one that is the same whenever they are sent:
+// the oldest change among the files of their run. Files copied together tell
+// nothing of the time of a scan, so they must not differ.
+void StampUndated(std::vector<RunFile>& files);
 
 // Keeps count of the samples in memory: drops those of `file` when the files
 // before it hold enough already.

@@ -20,10 +20,16 @@ RunView ViewOf(const v1::Reply& reply) {
   return view;
 }
 
-RunView AskForRun(Connection& connection, const std::string& run) {
+v1::Request RunQuestion(const std::string& run) {
+  constexpr std::uint32_t kMostLooks = 500;  // more than a figure has columns
   v1::Request request;
   request.mutable_show_run()->set_run(run);
-  RunView view = ViewOf(AskOrFail(connection, request));
+  request.mutable_show_run()->set_history(kMostLooks);
+  return request;
+}
+
+RunView AskForRun(Connection& connection, const std::string& run) {
+  RunView view = ViewOf(AskOrFail(connection, RunQuestion(run)));
   if (view.history.empty()) {
     throw Failure("the daemon has no advice on \"" + run + "\": see lastscan runs");
   }

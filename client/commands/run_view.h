@@ -16,6 +16,9 @@ struct RunView {
   std::optional<v1::RunRecord> record;
 };
 
+// The request for one run with its earlier advice.
+v1::Request RunQuestion(const std::string& run);
+
 // Throws NoAnswer; Failure with the daemon's reason when it does not know `run`.
 RunView AskForRun(Connection& connection, const std::string& run);
 

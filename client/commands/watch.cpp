@@ -12,6 +12,7 @@
 
 #include "commands/command.h"
 #include "commands/connection.h"
+#include "commands/run_view.h"
 #include "commands/screen.h"
 #include "commands/signals.h"
 #include "commands/terminal.h"
@@ -166,10 +167,8 @@ class Watcher {
     if (waiting_ || view_.away()) return;
     const std::string run = view_.WantsHistory();
     if (run.empty()) return;
-    v1::Request show;
-    show.mutable_show_run()->set_run(run);
     asked_history_ = run;
-    Ask(show);
+    Ask(RunQuestion(run));
   }
 
   void Ask(const v1::Request& request) {

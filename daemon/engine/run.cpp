@@ -193,12 +193,18 @@ const v1::Advice& Run::State::Admit(const v1::Snapshot& snapshot, std::string_vi
   Question question = QuestionOf(snapshot, transform);
   std::vector<std::complex<double>> summed = SummedSamples(snapshot, samples);
 
-  // Spectrum.
+  // Spectrum; with the first snapshot the FID's own noise too.
+  const double scans = static_cast<double>(snapshot.scans_done());
+  const bool complex = transform.complex();
+  NoiseEstimate single;
+  if (begins && complex) {
+    single = NoiseOfFid(summed, scans);
+    single.per_scan *= transform.noise_gain();
+  }
   const std::vector<std::complex<double>> early(
       summed.begin(),
       summed.begin() + static_cast<std::ptrdiff_t>(std::min(summed.size(), kOnsetPoints)));
   const std::vector<std::complex<double>> spectrum = transform.Apply(std::move(summed));
-  const bool complex = transform.complex();
   const double fill = transform.fill_ratio();
   const double independent = transform.independent_bins();
 
@@ -208,7 +214,6 @@ const v1::Advice& Run::State::Admit(const v1::Snapshot& snapshot, std::string_vi
     first_ = snapshot;
   }
   const double scans_before = scatter_.scans();
-  const double scans = static_cast<double>(snapshot.scans_done());
   const double increment = scans - scans_before;
   smallest_increment_ = begins ? increment : std::min(smallest_increment_, increment);
   if (question.key != question_.key) {  // another goal: nothing said of the old one holds
@@ -233,7 +238,8 @@ const v1::Advice& Run::State::Admit(const v1::Snapshot& snapshot, std::string_vi
   if (scatter_.increments() >= 2) {
     noise_ = scatter_.Estimate(complex, fill, independent);
   } else {
-    noise_ = NoiseOfQuietBands(spectrum, scans, complex, fill, independent);
+    noise_ = single.per_scan > 0 ? single
+                                 : NoiseOfQuietBands(spectrum, scans, complex, fill, independent);
   }
   // Digital silence has no noise to compare with; one count stands in for it.
   if (!(noise_.per_scan > 0)) noise_.per_scan = 1 / std::sqrt(scans);

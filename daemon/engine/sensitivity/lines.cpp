@@ -182,7 +182,11 @@ std::vector<Line> ReadLines(const ScaledSpectrum& spectrum, std::span<const doub
 
     Line line;
     line.nearest_bin = peak.bin;
-    Refine(spectrum, curve, line);
+    line.bin = static_cast<double>(peak.bin);
+    line.height = peak.height;
+    line.reading = spectrum.bins[static_cast<std::size_t>(peak.bin)] / spectrum.unit;
+    // Ripple of the noise is not worth a reading between the bins.
+    if (evidence.LogEvidence(own) > 0) Refine(spectrum, curve, line);
     line.width_hz = WidthInBins(curve, peak.bin, line.height, magnitude) * spectrum.axis.hz_per_bin;
     line.chosen = spectrum.complex ? 2 : 1;
 

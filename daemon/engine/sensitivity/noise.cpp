@@ -1,8 +1,11 @@
 #include "engine/sensitivity/noise.h"
 
 #include <algorithm>
+#include <bit>
 #include <boost/math/distributions/chi_squared.hpp>
 #include <cmath>
+#include <numbers>
+#include <unsupported/Eigen/FFT>
 
 namespace lastscan::engine {
 namespace {
@@ -127,6 +130,32 @@ NoiseEstimate NoiseOfQuietBands(std::span<const std::complex<double>> spectrum, 
   noise.per_scan = std::sqrt(quartile * (1 + pull) / scans);
   noise.relative_deviation = RelativeDeviationOfMedian(
       degrees, std::max(in_band * static_cast<double>(levels.size()) / 2, 1.0));
+  return noise;
+}
+
+NoiseEstimate NoiseOfFid(std::span<const std::complex<double>> summed, double scans) {
+  // Points filled in with zeros at the end were never acquired.
+  std::size_t points = summed.size();
+  while (points > 0 && summed[points - 1] == std::complex<double>(0)) --points;
+  NoiseEstimate noise;
+  if (points < 64) return noise;
+  std::vector<std::complex<double>> weighted(std::bit_ceil(points));
+  double power = 0;
+  for (std::size_t t = 0; t < points; ++t) {
+    const double sine =
+        std::sin(std::numbers::pi * (static_cast<double>(t) + 0.5) / static_cast<double>(points));
+    const double weight = sine * sine * sine * sine;
+    weighted[t] = weight * summed[t];
+    power += weight * weight;
+  }
+  std::vector<std::complex<double>> spectrum(weighted.size());
+  thread_local Eigen::FFT<double> fft;
+  fft.fwd(spectrum.data(), weighted.data(), static_cast<Eigen::Index>(weighted.size()));
+  const double share = static_cast<double>(points) / static_cast<double>(weighted.size());
+  // The weights make 35/18 neighbouring bins alike, their noise bandwidth.
+  noise =
+      NoiseOfQuietBands(spectrum, scans, true, share, static_cast<double>(points) * 18.0 / 35.0);
+  noise.per_scan /= std::sqrt(power);
   return noise;
 }
 

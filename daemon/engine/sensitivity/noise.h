@@ -61,10 +61,16 @@ class Scatter {
   int increments_ = 0;
 };
 
-// The noise when there is one snapshot only: the quietest regions of the
-// spectrum. `spectrum` is the accumulation after `scans` scans; its bands are
-// compared by their median power and the lower quartile of the bands is taken,
-// which is right as long as a quarter of the spectrum is free of lines.
+// The noise when there is one snapshot only. Of an FID: its points (summed over
+// `scans`) are weighted with sin^4, which starts and ends so smoothly that even
+// the strongest line has no feet, transformed, and read in the quietest bands.
+// Per point and quadrature; Transform::noise_gain leads to the spectrum.
+NoiseEstimate NoiseOfFid(std::span<const std::complex<double>> summed, double scans);
+
+// The same of data that are a spectrum, or of the broadened spectrum of an FID
+// (then feet of strong lines are part of what is read). `spectrum` is the accumulation after
+// `scans` scans; its bands are compared by their median power and the lower quartile of the bands
+// is taken, which is right as long as a quarter of the spectrum is free of lines.
 NoiseEstimate NoiseOfQuietBands(std::span<const std::complex<double>> spectrum, double scans,
                                 bool complex, double fill_ratio, double independent_bins);
 

@@ -46,11 +46,13 @@ std::complex<double> ValueBetweenBins(std::span<const std::complex<double>> bins
   // The points lie at times 0..N-1. Seen from their middle the spectrum turns
   // slowest, which is what lets few taps do; the turn is undone here.
   const double turn = std::numbers::pi * fill_ratio;  // radians per bin
+  const std::complex<double> step = std::polar(1.0, turn);
+  std::ptrdiff_t k = below - kHalfTaps + 1;
+  std::complex<double> turned = std::polar(1.0, -turn * (bin - static_cast<double>(k)));
   std::complex<double> value = 0;
-  for (std::ptrdiff_t k = below - kHalfTaps + 1; k <= below + kHalfTaps; ++k) {
-    const double offset = bin - static_cast<double>(k);
+  for (; k <= below + kHalfTaps; ++k, turned *= step) {
     const auto wrapped = static_cast<std::size_t>(((k % count) + count) % count);
-    value += bins[wrapped] * std::polar(KernelAt(offset), -turn * offset);
+    value += bins[wrapped] * turned * KernelAt(bin - static_cast<double>(k));
   }
   return value;
 }

@@ -10,10 +10,11 @@ namespace {
 
 constexpr double kTwoPi = 2 * std::numbers::pi;
 constexpr double kLongestDelay = 256;  // points
+constexpr double kOnsetReach = 12;     // points around the onset that are searched
 constexpr double kWeakest = 8;         // a line below this says little of phase
 constexpr double kHeaviest = 60;       // stronger lines are not trusted further:
                                        // their phases scatter for other reasons
-constexpr double kStep = 0.02;         // points of delay, grid of the search
+constexpr double kStep = 0.1;          // points of delay, 0.3 rad at the ends of the spectrum
 
 // Weight of a line: 1 / variance of its phase, variance no smaller than what
 // imperfect shim and overlap leave.
@@ -28,17 +29,36 @@ struct Fit {
   double misfit = 0;  // sum w (2 - 2 cos residual), about chi-square
 };
 
-Fit FitAtDelay(const Axis& axis, std::span<const LinePhase> lines, double delay) {
-  const double slope = -kTwoPi * delay / static_cast<double>(axis.bins);
+// The fits at `count` delays from `first` on, `step` apart. The phasors of the
+// lines are turned from one delay to the next, not computed anew.
+std::vector<Fit> FitsAtDelays(const Axis& axis, std::span<const LinePhase> lines, double first,
+                              double step, int count) {
+  const double per_point = kTwoPi / static_cast<double>(axis.bins);
   const double middle = static_cast<double>(axis.bins / 2);
-  std::complex<double> sum = 0;
+  std::vector<std::complex<double>> phasors;
+  std::vector<std::complex<double>> turns;
   double total = 0;
   for (const LinePhase& line : lines) {
-    const double weight = Weight(line);
-    sum += std::polar(weight, std::arg(line.reading) - slope * (line.bin - middle));
-    total += weight;
+    const double slope = per_point * (line.bin - middle);
+    phasors.push_back(std::polar(Weight(line), std::arg(line.reading) + first * slope));
+    turns.push_back(std::polar(1.0, step * slope));
+    total += Weight(line);
   }
-  return {delay, std::arg(sum), 2 * (total - std::abs(sum))};
+  std::vector<Fit> fits;
+  for (int i = 0; i < count; ++i) {
+    std::complex<double> sum = 0;
+    for (std::size_t l = 0; l < phasors.size(); ++l) {
+      sum += phasors[l];
+      phasors[l] *= turns[l];
+    }
+    fits.push_back({first + i * step, std::arg(sum), 2 * (total - std::abs(sum))});
+  }
+  return fits;
+}
+
+const Fit& Best(const std::vector<Fit>& fits) {
+  return *std::min_element(fits.begin(), fits.end(),
+                           [](const Fit& a, const Fit& b) { return a.misfit < b.misfit; });
 }
 
 Eigen::Vector2d Regressor(const LinePhase& line, double centre, double scale) {
@@ -90,20 +110,16 @@ std::optional<PhaseModel> FitPhase(const Axis& axis, std::span<const LinePhase> 
     return fit.misfit <= 9 + 3 * static_cast<double>(lines.size());
   };
   if (given_delay) {
-    const Fit fit = FitAtDelay(axis, lines, *given_delay);
+    const Fit fit = FitsAtDelays(axis, lines, *given_delay, 0, 1).front();
     if (!acceptable(fit)) return std::nullopt;
     return model(fit);
   }
   if (lines.size() < 3) return std::nullopt;
-  const double low = onset ? std::max(0.0, *onset - 12) : 0;
-  const double high = onset ? *onset + 12 : kLongestDelay;
-  Fit best;
-  best.misfit = INFINITY;
-  std::vector<Fit> fits;
-  for (double delay = low; delay <= high; delay += kStep) {
-    fits.push_back(FitAtDelay(axis, lines, delay));
-    if (fits.back().misfit < best.misfit) best = fits.back();
-  }
+  const double low = onset ? std::max(0.0, *onset - kOnsetReach) : 0;
+  const double high = onset ? *onset + kOnsetReach : kLongestDelay;
+  const std::vector<Fit> fits =
+      FitsAtDelays(axis, lines, low, kStep, static_cast<int>((high - low) / kStep) + 1);
+  const Fit best = Best(FitsAtDelays(axis, lines, Best(fits).delay - kStep, kStep / 20, 41));
   if (!acceptable(best)) return std::nullopt;
   // A rival is any delay whose predicted phases differ from the best one's at
   // some line and that explains the lines nearly as well.
