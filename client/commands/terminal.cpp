@@ -71,7 +71,9 @@ void FileComplaints::Add(const std::string& file, const std::string& reason) {
 
 void FileComplaints::Close() {
   if (unsaid_ > 0) {
-    Complain(std::to_string(unsaid_) + " more files were left out for reasons given above");
+    Complain(unsaid_ == 1
+                 ? "1 more file was left out for a reason given above"
+                 : std::to_string(unsaid_) + " more files were left out for reasons given above");
   }
   unsaid_ = 0;
 }

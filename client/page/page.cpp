@@ -12,7 +12,7 @@
 #include <chrono>
 #include <cstdio>
 #include <iostream>
-#include <set>
+#include <memory>
 #include <thread>
 
 #include "drawing/escape.h"
@@ -73,6 +73,7 @@ class PageServer {
   RunBook book_;
   httplib::Server server_;
   std::atomic<int> streams_ = 0;
+  std::atomic<bool> ended_ = false;  // the server listens no more
 };
 
 // What every answer carries, and which requests get one at all.
@@ -244,13 +245,18 @@ int PageServer::Serve() {
     int which = 0;
     sigwait(&stops, &which);
     book_.Close();
-    server_.stop();
+    // A stop that comes before the server has begun to listen is lost: repeat.
+    while (!ended_) {
+      server_.stop();
+      std::this_thread::sleep_for(20ms);
+    }
   });
   std::thread asker([this] { AskDaemon(); });
   const std::string host = options_.host == "::1" ? "[::1]" : options_.host;
   std::cout << "The page is at http://" << host << ":" << port << "/ (stop with Ctrl-C)"
             << std::endl;
   const bool served = server_.listen_after_bind();
+  ended_ = true;
   const bool asked_to_stop = book_.closed();
   book_.Close();
   if (!asked_to_stop) {

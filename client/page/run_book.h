@@ -70,7 +70,8 @@ class RunBook {
   std::condition_variable changed_;  // version, histories, wishes or closed
   std::map<std::string, Entry> entries_;
   std::set<std::string> wanted_;
-  std::uint64_t version_ = 1;
+  // Begins at the clock, so that a browser sees a server that was started anew.
+  std::uint64_t version_ = static_cast<std::uint64_t>(std::time(nullptr)) * 1000;
   bool read_once_ = false;
   std::string trouble_;
   std::time_t answered_at_ = 0;

@@ -41,6 +41,10 @@ struct MeasuredNoise {
 // REQUIRES: at least 64 points, finite samples.
 MeasuredNoise MeasureNoise(const formats::Recording& finished);
 
+// The same by domain; `samples` interleaved for an FID, real for a spectrum.
+MeasuredNoise MeasureFidNoise(const std::vector<double>& samples);
+MeasuredNoise MeasureSpectrumNoise(const std::vector<double>& samples);
+
 // Noise with the level and shape of `noise` and as many samples as `samples`
 // of the recording it was measured in: interleaved for an FID.
 std::vector<double> DrawNoise(const MeasuredNoise& noise, std::size_t samples,

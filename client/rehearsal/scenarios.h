@@ -33,7 +33,7 @@ const Scenario* FindScenario(std::string_view name);
 
 // A small sample for studies of thousands of runs: 1,024 points, 2,000 Hz, no
 // receiver delay, one line of 2 Hz at 101.3 ppm in the range 90.1 to 109.9 ppm,
-// broadened by 2 Hz. A run of 64 snapshots takes about a millisecond.
+// broadened by 2 Hz. A run of 64 snapshots takes a few milliseconds.
 InventedSample StudySample(double signal_to_noise_per_scan);
 
 }  // namespace lastscan::rehearsal

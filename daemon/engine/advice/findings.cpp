@@ -25,11 +25,13 @@ constexpr double kLostLock = 0.5;    // share of the best lock level
 
 }  // namespace
 
+bool Findings::Stands(v1::FindingKind kind) const {
+  return std::any_of(standing_.begin(), standing_.end(),
+                     [&](const v1::Finding& finding) { return finding.kind() == kind; });
+}
+
 void Findings::Stand(v1::Finding finding) {
-  for (v1::Finding& known : standing_) {
-    if (known.kind() == finding.kind()) return;
-  }
-  standing_.push_back(std::move(finding));
+  if (!Stands(finding.kind())) standing_.push_back(std::move(finding));
 }
 
 std::vector<v1::Finding> Findings::Look(const v1::Snapshot& snapshot, const Observations& seen) {
@@ -48,7 +50,9 @@ std::vector<v1::Finding> Findings::Look(const v1::Snapshot& snapshot, const Obse
     }
     receiver_gain_db_ = snapshot.receiver_gain_db();
   }
-  if (seen.noise_of_increment > 0 && seen.noise_before.from_increments && !gain_changed) {
+  // Once the level has stepped, what came before is no measure any more.
+  if (seen.noise_of_increment > 0 && seen.noise_before.from_increments && !gain_changed &&
+      !Stands(v1::GAIN_CHANGE) && !Stands(v1::NOISE_STEP)) {
     const double ratio = seen.noise_of_increment / seen.noise_before.per_scan;
     const double limit = std::max(kStep, 6 * seen.deviation_of_increment);
     if (std::abs(ratio - 1) > limit) {
@@ -72,10 +76,8 @@ std::vector<v1::Finding> Findings::Look(const v1::Snapshot& snapshot, const Obse
   }
 
   // Amplitude: the same lines give less per scan than before.
-  const bool scaled = std::any_of(standing_.begin(), standing_.end(), [](const auto& finding) {
-    return finding.kind() == v1::GAIN_CHANGE;
-  });
-  if (seen.amplitude_change && !scaled && 1 - seen.amplitude_change->ratio > kLoss) {
+  if (seen.amplitude_change && !Stands(v1::GAIN_CHANGE) &&
+      1 - seen.amplitude_change->ratio > kLoss) {
     const double loss = 1 - seen.amplitude_change->ratio;
     std::erase_if(standing_, [](const auto& f) { return f.kind() == v1::AMPLITUDE_LOSS; });
     Stand(Make(v1::AMPLITUDE_LOSS, loss > kGrossLoss ? v1::HIGH : v1::WARNING,
@@ -90,14 +92,21 @@ std::vector<v1::Finding> Findings::Look(const v1::Snapshot& snapshot, const Obse
   // Lock: a state, not an event; it is a finding as long as it lasts.
   if (snapshot.has_lock_level()) {
     highest_lock_level_ = std::max(highest_lock_level_, snapshot.lock_level());
-    if (snapshot.lock_level() < kLostLock * highest_lock_level_ || snapshot.lock_level() < 0.05) {
-      findings.push_back(Make(v1::LOCK_LOSS, v1::HIGH, since,
-                              "the lock level is " + Percent(snapshot.lock_level()) + ", after " +
-                                  Percent(highest_lock_level_) +
-                                  " at its best: look at the lock before more scans are added"));
+    const bool lost =
+        snapshot.lock_level() < kLostLock * highest_lock_level_ || snapshot.lock_level() < 0.05;
+    if (!lost) lock_lost_since_ = 0;
+    if (lost && lock_lost_since_ == 0) lock_lost_since_ = since;
+    if (lost) {
+      // In front: what a lost lock does to amplitudes follows from it.
+      findings.insert(findings.begin(),
+                      Make(v1::LOCK_LOSS, v1::HIGH, lock_lost_since_,
+                           "the lock level is " + Percent(snapshot.lock_level()) + ", after " +
+                               Percent(highest_lock_level_) +
+                               " at its best: look at the lock before more scans are added"));
     }
   }
-  if (seen.noise_growth.lower() > 0.6 && !seen.strong_lines) {
+  if (seen.noise_growth.lower() > 0.6 && !seen.strong_lines && !Stands(v1::GAIN_CHANGE) &&
+      !Stands(v1::NOISE_STEP)) {
     findings.push_back(Make(v1::COHERENT_SPUR, v1::WARNING, since,
                             "the quiet part of the spectrum grows as scans to the power " +
                                 Rounded(seen.noise_growth.estimate()) +
@@ -129,12 +138,14 @@ std::vector<v1::Finding> Findings::Look(const v1::Snapshot& snapshot, const Obse
 void Findings::SaveTo(state::Run& state) const {
   for (const v1::Finding& finding : standing_) *state.add_standing() = finding;
   state.set_highest_lock_level(highest_lock_level_);
+  state.set_lock_lost_since(lock_lost_since_);
   if (receiver_gain_db_) state.set_receiver_gain_db(*receiver_gain_db_);
 }
 
 void Findings::RestoreFrom(const state::Run& state) {
   standing_.assign(state.standing().begin(), state.standing().end());
   highest_lock_level_ = state.highest_lock_level();
+  lock_lost_since_ = state.lock_lost_since();
   receiver_gain_db_.reset();
   if (state.has_receiver_gain_db()) receiver_gain_db_ = state.receiver_gain_db();
 }

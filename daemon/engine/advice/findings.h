@@ -40,10 +40,12 @@ class Findings {
   void RestoreFrom(const state::Run& state);
 
  private:
+  bool Stands(v1::FindingKind kind) const;
   void Stand(v1::Finding finding);
 
   std::vector<v1::Finding> standing_;  // once found, they hold to the end of the run
   double highest_lock_level_ = 0;
+  double lock_lost_since_ = 0;  // scan; 0: it is well
   std::optional<double> receiver_gain_db_;
 };
 

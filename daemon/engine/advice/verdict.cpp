@@ -77,23 +77,27 @@ std::string NeededScans(const v1::Advice& advice) {
   return text + (std::isinf(needed.upper()) ? "no upper limit yet" : Scans(needed.upper())) + ")";
 }
 
-std::string WhatWouldHelp(const Case& facts, const Wording& wording) {
-  const v1::Advice& advice = *wording.advice;
+// Signal-to-noise by the booking's end: of an unseen line, at most.
+double AtBookingEnd(const Case& facts, const v1::Advice& advice) {
+  const v1::Interval& now = advice.signal_to_noise();
+  const double reading = advice.limiting_line().confirmed() ? now.estimate() : now.upper();
+  return reading * std::sqrt(std::max(facts.booked / facts.scans, 1.0));
+}
+
+std::string WhatWouldHelp(const Case& facts, const v1::Advice& advice) {
   // Signal-to-noise goes as the concentration, scans as its inverse square.
-  const double reach =
-      std::max(advice.limiting_line().confirmed() ? advice.signal_to_noise().estimate()
-                                                  : advice.signal_to_noise().upper(),
-               1e-6);
-  const double at_end = reach * std::sqrt(std::max(facts.booked / facts.scans, 1.0));
-  const double factor = advice.goal().target() / at_end;
+  const double factor = advice.goal().target() / std::max(AtBookingEnd(facts, advice), 1e-6);
+  const bool number = factor > 1.05 && factor < 1000;
+  const std::string least = advice.limiting_line().confirmed() ? "about " : "at least ";
   std::string help = "What would help: ";
-  if (factor > 1) help += "at least " + Rounded(factor) + " times the concentration, ";
+  help += number ? least + Rounded(factor) + " times the concentration, " : "more substance, ";
   if (advice.matched_gain() > 1.1) {
     help += "a broadening of " + Rounded(advice.matched_broadening_hz()) + " Hz (factor " +
             Rounded(advice.matched_gain()) + "), ";
   }
-  return help + "or a booking of " + Rounded(std::max(factor * factor, 1.0)) +
-         " times as many scans.";
+  return help + (number
+                     ? "or a booking with " + least + Rounded(factor * factor) + " times the scans."
+                     : "or a longer booking.");
 }
 
 }  // namespace
@@ -173,15 +177,12 @@ std::string Because(const Case& facts, const Wording& wording) {
       return text;
     }
     case v1::OUT_OF_REACH: {
-      std::string text = so_far + "; ";
-      if (advice.limiting_line().confirmed()) {
-        text += Target(advice) + " would need " + NeededScans(advice);
-      } else {
-        text += Target(advice) + " would need more than " + Scans(advice.scans_needed().lower()) +
-                " scans";
-      }
-      text += ", and " + BookingEnd(facts, wording) + " allows " + Scans(facts.booked) + ". ";
-      return text + WhatWouldHelp(facts, wording);
+      const bool confirmed = advice.limiting_line().confirmed();
+      return so_far + "; " + BookingEnd(facts, wording) + " allows " + Scans(facts.booked) +
+             " scans, which would bring it to " + (confirmed ? "about " : "at most ") +
+             Rounded(AtBookingEnd(facts, advice)) + ", and " + Target(advice) +
+             " has a chance of " + Percent(advice.chance_by_booking_end()) + ". " +
+             WhatWouldHelp(facts, advice);
     }
     case v1::INSPECT: {
       std::string text = "Look at the instrument: ";

@@ -30,6 +30,10 @@ Outlook LookAhead(const Survey& survey, const OutlookQuestion& question) {
   const double infinite = std::numeric_limits<double>::infinity();
 
   outlook.stop_rule_met = true;
+  // Readings of confirmed lines err independently; lines not seen yet are of one
+  // sample and strong or weak together, so the weakest chance stands for them.
+  double unseen_by_plan = 1;
+  double unseen_by_booking = 1;
   outlook.chance_by_plan = 1;
   outlook.chance_by_booking = 1;
   double most_needed = -1;
@@ -39,8 +43,15 @@ Outlook LookAhead(const Survey& survey, const OutlookQuestion& question) {
     const double threshold = std::max(question.target, limit + margin * reading.deviation);
     outlook.stop_rule_met =
         outlook.stop_rule_met && requirement.confirmed && reading.estimate >= threshold;
-    outlook.chance_by_plan *= Chance(requirement, threshold, question.scans, question.planned);
-    outlook.chance_by_booking *= Chance(requirement, threshold, question.scans, question.booked);
+    const double by_plan = Chance(requirement, threshold, question.scans, question.planned);
+    const double by_booking = Chance(requirement, threshold, question.scans, question.booked);
+    if (requirement.confirmed) {
+      outlook.chance_by_plan *= by_plan;
+      outlook.chance_by_booking *= by_booking;
+    } else {
+      unseen_by_plan = std::min(unseen_by_plan, by_plan);
+      unseen_by_booking = std::min(unseen_by_booking, by_booking);
+    }
     // An unconfirmed window needs more than any confirmed one; among several,
     // the one that could be strongest is no comfort, so the weakest limits.
     const double needed = requirement.confirmed
@@ -52,6 +63,9 @@ Outlook LookAhead(const Survey& survey, const OutlookQuestion& question) {
       outlook.threshold = threshold;
     }
   }
+
+  outlook.chance_by_plan *= unseen_by_plan;
+  outlook.chance_by_booking *= unseen_by_booking;
 
   const Requirement& limiting = survey.requirements[outlook.limiting];
   const Reading& reading = limiting.reading;

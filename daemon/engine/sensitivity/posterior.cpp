@@ -1,6 +1,7 @@
 #include "engine/sensitivity/posterior.h"
 
 #include <algorithm>
+#include <array>
 #include <boost/math/special_functions/bessel.hpp>
 #include <cmath>
 #include <numbers>
@@ -8,9 +9,26 @@
 namespace lastscan::engine {
 namespace {
 
-double LogBesselI0(double x) {
-  if (x < 30) return std::log(boost::math::cyl_bessel_i(0, x));
-  return x - 0.5 * std::log(2 * std::numbers::pi * x) + std::log1p(0.125 / x);
+// ln I0(x) - x. From a table below kTableEnd (linear interpolation, error below
+// 1e-4), from the asymptotic series above.
+double ScaledLogBesselI0(double x) {
+  constexpr double kTableEnd = 32;
+  constexpr double kTableStep = 1.0 / 32;
+  static const auto table = [] {
+    std::array<double, static_cast<std::size_t>(kTableEnd / kTableStep) + 2> values{};
+    for (std::size_t i = 0; i < values.size(); ++i) {
+      const double at = static_cast<double>(i) * kTableStep;
+      values[i] = std::log(boost::math::cyl_bessel_i(0, at)) - at;
+    }
+    return values;
+  }();
+  if (x >= kTableEnd) {
+    return -0.5 * std::log(2 * std::numbers::pi * x) + std::log1p(0.125 / x);
+  }
+  const double position = x / kTableStep;
+  const auto index = static_cast<std::size_t>(position);
+  const double fraction = position - static_cast<double>(index);
+  return table[index] * (1 - fraction) + table[index + 1] * fraction;
 }
 
 }  // namespace
@@ -55,7 +73,8 @@ AmplitudePosterior AmplitudePosterior::OfUnseen(std::span<const float> readings,
     for (std::size_t cell = 0; cell < counts.size(); ++cell) {
       if (counts[cell] == 0) continue;
       const double x = lowest + (static_cast<double>(cell) + 0.5) * kCell;
-      const double log_term = quadratures == 2 ? LogBesselI0(a * std::abs(x)) : a * x;
+      const double log_term =
+          quadratures == 2 ? a * std::abs(x) + ScaledLogBesselI0(a * std::abs(x)) : a * x;
       sum += counts[cell] * std::exp(log_term - reference);
     }
     logs.push_back(reference - 0.5 * a * a + std::log(std::max(sum, 1e-300)));

@@ -8,6 +8,8 @@ namespace {
 
 constexpr double kLower = 0.025;
 constexpr double kUpper = 0.975;
+constexpr double kNormal95 = 1.959963984540054;
+constexpr double kPlainlyNormal = 12;  // deviations from zero
 
 // The bins of `ranges` that no confirmed line fills, thinned to independent
 // ones: where a further line could hide.
@@ -59,6 +61,17 @@ Reading ReadingOf(double z, double chosen, double noise_deviation) {
   Reading reading;
   reading.deviation = std::hypot(1.0, z * noise_deviation);
   reading.estimate = std::sqrt(std::max(z * z - chosen, 0.0));
+  const double variance = reading.deviation * reading.deviation;
+  if (z > kPlainlyNormal * reading.deviation) {
+    // Far from zero a^(-c/2) exp(-(a-z)^2/(2 s^2)) is normal about its top, with
+    // the curvature it has there.
+    const double top = z - 0.5 * chosen * variance / z;
+    const double half =
+        kNormal95 * reading.deviation / std::sqrt(1 - 0.5 * chosen * variance / (top * top));
+    reading.lower = top - half;
+    reading.upper = top + half;
+    return reading;
+  }
   const auto posterior = AmplitudePosterior::OfLine(z, chosen, reading.deviation);
   reading.lower = posterior.Quantile(kLower);
   reading.upper = posterior.Quantile(kUpper);

@@ -65,7 +65,7 @@ TEST(Table, AlignsAndEscapes) {
   const std::string table =
       AsTable({{"run", "scans"}, {"na\033[31mme", "7"}, {"b", "12345"}}, {false, true});
   EXPECT_THAT(table, Not(HasSubstr("\033")));
-  EXPECT_THAT(table, HasSubstr("b            12345\n"));
+  EXPECT_THAT(table, HasSubstr("b          12345\n"));
   EXPECT_EQ(std::count(table.begin(), table.end(), '\n'), 4);
 }
 

@@ -78,7 +78,7 @@ TEST_F(LedgerTest, KeepsEverythingForTheNextProcess) {
   EXPECT_TRUE(MessageDifferencer::Equals(*book.AdviceGiven("night 1", 100, "print 100"), first));
   EXPECT_TRUE(MessageDifferencer::Equals(*book.LatestAdvice("night 1"), second));
   ASSERT_TRUE(book.Record("night 1"));
-  EXPECT_TRUE(MessageDifferencer::Equals(*book.Record("night 1"), record))
+  EXPECT_TRUE(MessageDifferencer::Equivalent(*book.Record("night 1"), record))
       << book.Record("night 1")->DebugString() << record.DebugString();
 }
 

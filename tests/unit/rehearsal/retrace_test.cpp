@@ -199,6 +199,21 @@ TEST(MeasureNoiseOfSpectrum, RightWithinThreePercentUnderStrongLines) {
   }
 }
 
+// A narrow line is cut off at the end of the FID: its ripple is all over the
+// spectrum and as high as the noise or higher far from the line.
+TEST(MeasureNoiseOfSpectrum, RippleOfACutOffLineIsNoNoise) {
+  InventedSample sample = CarbonSample(0);
+  sample.broadening_hz = 0.3;
+  sample.lines = {{128, 0.05, 600}, {77, 0.05, 1000}};
+  double mean = 0;
+  for (int i = 0; i < 6; ++i) {
+    const double ratio = MeasureNoise(SpectrumOf(sample, 300 + i)).rms / TrueRms(sample);
+    EXPECT_NEAR(ratio, 1, 0.03);
+    mean += ratio / 6;
+  }
+  EXPECT_NEAR(mean, 1, 0.015);
+}
+
 TEST(MeasureNoiseOfSpectrum, DrawnNeighboursAreAsAlikeAsMeasuredOnes) {
   const InventedSample sample = CarbonSample(1);
   const formats::Recording finished = SpectrumOf(sample, 9);
@@ -265,30 +280,32 @@ TEST(Retrace, IncrementsScatterAsTheMeasuredNoise) {
   EXPECT_LT(scatter / (one_scan * one_scan), quantile(complement(chi, 1e-5)));
 }
 
-// With the measured noise equal to the true one, a partial sum less its signal
-// has variance n sigma^2: the bridge's n(N-n)/N and the rest from F(N).
+// A partial sum less its signal is (n/N) F(N) + b(n): of true variance
+// n^2/N sigma^2 and, from the measured level, n(N-n)/N sigma'^2; together
+// n sigma^2 when they agree. Later increments know nothing of earlier ones.
 TEST(Retrace, PartialSumsHaveTheNoiseOfARunningOne) {
-  InventedSample sample = CarbonSample(0);
+  const InventedSample sample = CarbonSample(0);
   const auto finished = InventedRun(sample, 16).AdvanceTo(kScans);
   Retrace retrace(finished, 17);
+  const double variance = sample.noise_rms * sample.noise_rms;
+  const double measured = retrace.noise().rms * retrace.noise().rms / kScans;
+  const auto count = static_cast<double>(finished.samples.size());
+  constexpr double kLimit = 4.3;  // standard deviations, 1 in 50,000
   std::vector<double> at_70;
-  double product = 0;
   for (const std::uint64_t look : {20u, 70u, 300u}) {
     const auto now = retrace.AdvanceTo(look).samples;
+    const double share = static_cast<double>(look) / kScans;
     double energy = 0;
     for (const double value : now) energy += value * value;
-    const auto count = static_cast<double>(now.size());
-    const double expected = sample.noise_rms * sample.noise_rms * static_cast<double>(look) * count;
-    EXPECT_NEAR(energy / expected, 1, 0.04) << look;
+    const double expected = static_cast<double>(look) * (share * variance + (1 - share) * measured);
+    EXPECT_NEAR(energy / count / expected, 1, kLimit * std::sqrt(2 / count)) << look;
     if (look == 70) at_70 = now;
-    if (look == 300) {
-      // Increments are independent: F(300) - F(70) knows nothing of F(70).
-      for (std::size_t i = 0; i < now.size(); ++i) product += at_70[i] * (now[i] - at_70[i]);
-      const double deviation =
-          sample.noise_rms * sample.noise_rms * std::sqrt(70.0 * 230.0 * count);
-      // 1.6 %: 3 standard deviations of the measured level's share of it.
-      EXPECT_NEAR(product / deviation, 0, 6);
-    }
+    if (look != 300) continue;
+    double product = 0;
+    for (std::size_t i = 0; i < now.size(); ++i) product += at_70[i] * (now[i] - at_70[i]);
+    const double left = 70.0 * 230.0 / kScans * (variance - measured);
+    const double deviation = variance * std::sqrt(70.0 * 230.0 / count);
+    EXPECT_NEAR(product / count, left, kLimit * deviation);
   }
 }
 
