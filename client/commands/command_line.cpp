@@ -1,7 +1,6 @@
 // The whole command line of `lastscan`: its commands, version, help and errors.
 #include <google/protobuf/stubs/logging.h>
 
-#include <csignal>
 #include <exception>
 #include <iostream>
 
@@ -25,13 +24,19 @@ std::string HelpFor(const CLI::App& program) {
   return "lastscan --help";
 }
 
+// The parser would only say that a command is missing.
+void RequireKnownCommand(const CLI::App& program, int argc, char** argv) {
+  if (argc < 2 || argv[1][0] == '-') return;
+  const auto named = [&](const CLI::App* command) { return command->get_name() == argv[1]; };
+  if (!program.get_subcommands(named).empty()) return;
+  throw WrongUse("there is no command \"" + std::string(argv[1]) + "\"");
+}
+
 }  // namespace
 
 int RunCommandLine(int argc, char** argv) {
   // A broken reply is reported by us in one line; the library need not say more.
   google::protobuf::SetLogHandler(nullptr);
-  // Output into a closed pipe ends as a failed write, not as a signal.
-  std::signal(SIGPIPE, SIG_IGN);
 
   CLI::App program(kWhatItDoes);
   program.name("lastscan");
@@ -54,11 +59,12 @@ int RunCommandLine(int argc, char** argv) {
   AddRehearse(program, job);
 
   try {
+    RequireKnownCommand(program, argc, argv);
     program.parse(argc, argv);
     const int code = job();
     std::cout.flush();
     if (!std::cout) {
-      throw Failure("the output could not be written: is the disk full or the reader gone?");
+      throw Failure("the output could not be written: is the disk full?");
     }
     return code;
   } catch (const CLI::ParseError& error) {

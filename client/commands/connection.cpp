@@ -144,36 +144,36 @@ std::optional<v1::Reply> Connection::Take() {
   return reply;
 }
 
+std::optional<v1::Reply> Connection::TryToAsk(const v1::Request& request, std::string_view samples,
+                                              std::chrono::milliseconds time) {
+  Begin(request, samples);
+  std::optional<v1::Reply> reply;
+  if (Wait(time)) reply = Take();
+  if (!reply) {
+    answered_before_ = false;
+    Open();
+  }
+  return reply;
+}
+
 v1::Reply Connection::Ask(const v1::Request& request, std::string_view samples) {
-  const auto ask = [this](const v1::Request& what, std::string_view frame,
-                          std::chrono::milliseconds time) {
-    Begin(what, frame);
-    std::optional<v1::Reply> reply;
-    if (Wait(time)) reply = Take();
-    if (!reply) {
-      answered_before_ = false;
-      Open();
-    }
-    return reply;
-  };
+  const NoAnswer nobody("no daemon answers at " + endpoint_ +
+                        ": start lastscand or name another with --at");
   if (!answered_before_) {
     const std::string path =
         endpoint_.starts_with(kIpc) ? endpoint_.substr(kIpc.size()) : std::string();
     std::error_code ignored;
-    const bool missing = !path.empty() && path[0] != '@' && !fs::exists(path, ignored);
+    if (!path.empty() && path[0] != '@' && !fs::exists(path, ignored)) throw nobody;
     v1::Request ping;
     ping.mutable_ping();
-    if (missing || !ask(ping, {}, kPingTime)) {
-      throw NoAnswer("no daemon answers at " + endpoint_ +
-                     ": start lastscand or name another with --at");
-    }
+    if (!request.has_ping() && !TryToAsk(ping, {}, kPingTime)) throw nobody;
   }
-  std::optional<v1::Reply> reply = ask(request, samples, kAnswerTime);
-  if (!reply) {
-    throw NoAnswer("the daemon at " + endpoint_ +
-                   " did not answer within 30 s: ask again, a snapshot sent twice does no harm");
-  }
-  return *std::move(reply);
+  std::optional<v1::Reply> reply =
+      TryToAsk(request, samples, request.has_ping() ? kPingTime : kAnswerTime);
+  if (reply) return *std::move(reply);
+  if (request.has_ping()) throw nobody;
+  throw NoAnswer("the daemon at " + endpoint_ +
+                 " did not answer within 30 s: ask again, a snapshot sent twice does no harm");
 }
 
 v1::Reply Send(Connection& connection, const formats::Recording& recording) {

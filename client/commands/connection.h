@@ -65,6 +65,9 @@ class Connection {
  private:
   void Open();
   bool Wait(std::chrono::milliseconds time);
+  // Nothing if no reply comes in time; the next request then starts afresh.
+  std::optional<v1::Reply> TryToAsk(const v1::Request& request, std::string_view samples,
+                                    std::chrono::milliseconds time);
 
   std::string endpoint_;
   int interrupt_;

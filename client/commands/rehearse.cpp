@@ -30,6 +30,7 @@ struct RehearseOptions {
   std::uint64_t seed = 1;
   double pace_seconds = 0;
   bool list = false;
+  bool obey = false;
   bool feed = false;
   bool json = false;
 };
@@ -90,6 +91,10 @@ std::string OptionsOf(const v1::Snapshot& snapshot) {
     text += (goal.kind() == v1::KNOWN_LINE ? " --known-line " : " --window ") +
             ExactNumber(window.low_ppm()) + ":" + ExactNumber(window.high_ppm());
   }
+  for (const v1::ShiftRange& range : goal.excluded()) {
+    text += " --exclude " + ExactNumber(range.low_ppm()) + ":" + ExactNumber(range.high_ppm());
+  }
+  if (!goal.solvent().empty()) text += " --solvent " + goal.solvent();
   if (goal.lines() > 0) text += " --lines " + std::to_string(goal.lines());
   text += " --planned-scans " + std::to_string(snapshot.scans_planned()) + " --phase-cycle " +
           std::to_string(snapshot.phase_cycle());
@@ -112,6 +117,7 @@ void Rehearse(const RehearseOptions& options, const rehearsal::Scenario& scenari
 
   if (!printer.json()) std::cout << scenario.name << ": " << scenario.story << '\n';
   v1::Snapshot facts;
+  std::int64_t booking_end = 0;  // reckoned from the first look
   for (const std::uint64_t scans : scenario.looks) {
     formats::Recording look = run.AdvanceTo(scans);
     v1::Snapshot& snapshot = look.snapshot;
@@ -119,10 +125,12 @@ void Rehearse(const RehearseOptions& options, const rehearsal::Scenario& scenari
     if (options.feed) snapshot.set_run(scenario.name + "-" + TimeInName(started));
     *snapshot.mutable_goal() = scenario.goal;
     if (scenario.booking_hours) {
-      const double start = static_cast<double>(snapshot.recorded_at().seconds()) -
-                           static_cast<double>(scans) * scenario.sample.seconds_per_scan;
-      snapshot.mutable_booking_end()->set_seconds(
-          std::llround(start + 3600 * *scenario.booking_hours));
+      if (booking_end == 0) {
+        const double start = static_cast<double>(snapshot.recorded_at().seconds()) -
+                             static_cast<double>(scans) * scenario.sample.seconds_per_scan;
+        booking_end = std::llround(start + 3600 * *scenario.booking_hours);
+      }
+      snapshot.mutable_booking_end()->set_seconds(booking_end);
     }
     options.goal.ApplyTo(*snapshot.mutable_goal());
     options.facts.ApplyPlanTo(snapshot);
@@ -135,6 +143,7 @@ void Rehearse(const RehearseOptions& options, const rehearsal::Scenario& scenari
     if (!adviser) continue;
     const v1::Advice advice = adviser->Judge(look);
     printer.Print(advice, Truth(run, advice));
+    if (options.obey && advice.verdict() == v1::ENOUGH) break;
   }
   if (printer.json()) return;
   if (adviser) std::cout << "The truth: " << scenario.truth << '\n';
@@ -172,6 +181,7 @@ void AddRehearse(CLI::App& program, Job& job) {
       "rehearse", "Invented runs with known truth: what does the advice say, and is it right?");
   command->add_option("--scenario", options->scenario, "only this one")->type_name("NAME");
   command->add_flag("--list", options->list, "list the scenarios and leave");
+  command->add_flag("--obey", options->obey, "end a run when the advice says enough");
   command->add_option("--seed", options->seed, "seed of all noise")
       ->check(CLI::Range(std::uint64_t{0}, kMostSeed))
       ->capture_default_str();

@@ -64,6 +64,7 @@ class Watcher {
     while (Step()) {
     }
     screen_.reset();
+    printer_.Close();  // the screen had room for a short caution only
     return kDone;
   }
 

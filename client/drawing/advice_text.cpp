@@ -177,9 +177,8 @@ std::string FindingText(const v1::Finding& finding) {
   if (finding.since_scan() > 0) {
     text += ", since scan " + std::to_string(finding.since_scan());
   }
-  text += ".";
   if (!finding.detail().empty()) {
-    text += " " + ForTerminal(finding.detail());
+    text += ": " + ForTerminal(finding.detail());
   }
   return text;
 }
@@ -247,8 +246,8 @@ std::string AdviceInFull(const v1::Advice& advice, const Style& style) {
       who += (who.empty() ? "" : ", ") + ForTerminal(name);
     }
   }
-  const std::string when = ClockTime(advice.issued_at(), advice.issued_at());
-  text += "\n" + Wrapped("Run " + who + (when.empty() ? "" : ", seen at " + when), width, "", "  ");
+  const std::string when = ClockTime(advice.issued_at(), {});
+  text += "\n" + Wrapped("Run " + who + (when.empty() ? "" : ", seen " + when), width, "", "  ");
   text += FactsOf(advice, width);
   if (const std::string lines = LinesOf(advice, width); !lines.empty()) {
     text += Title("Lines", style) + lines;

@@ -254,6 +254,16 @@ void ReadSpectrumTable(const Block& block, Recording& recording) {
   recording.samples = ReadTable(page, abscissa);
 }
 
+// Numbers that are each possible can still make an axis that is not.
+void CheckAxis(const v1::Snapshot& snapshot) {
+  const double width = snapshot.spectral_width_hz();
+  if (!(width > 0) || !std::isfinite(width) || !std::isfinite(snapshot.centre_shift_ppm())) {
+    throw Unreadable("its axis makes a spectral width of " + Printed(width) +
+                     " Hz around a shift of " + Printed(snapshot.centre_shift_ppm()) +
+                     " ppm, which cannot be: export the file again");
+  }
+}
+
 Recording Read(std::string_view text) {
   constexpr std::string_view kByteOrderMark = "\xEF\xBB\xBF";
   if (text.substr(0, 3) == kByteOrderMark) text.remove_prefix(3);
@@ -265,6 +275,7 @@ Recording Read(std::string_view text) {
   recording.snapshot.set_encoding(v1::FLOAT64);
   if (jcamp::Comparable(jcamp::TextOf(block.Find("DATATYPE"))) == "NMRFID") {
     ReadFid(block, recording);
+    CheckAxis(recording.snapshot);
     return recording;
   }
   recording.snapshot.set_domain(v1::SPECTRUM);
@@ -274,6 +285,7 @@ Recording Read(std::string_view text) {
     ReadSpectrumTable(block, recording);
   }
   recording.snapshot.set_points(static_cast<std::uint32_t>(recording.samples.size()));
+  CheckAxis(recording.snapshot);
   return recording;
 }
 

@@ -1,12 +1,14 @@
 // Writes JCAMP-DX: an FID as NTUPLES with a real and an imaginary page, a spectrum
 // as XYDATA in HZ.
 #include <algorithm>
-#include <charconv>
 #include <chrono>
 #include <cmath>
 #include <cstdint>
+#include <cstdio>
+#include <limits>
 #include <ostream>
 #include <stdexcept>
+#include <utility>
 
 #include "engine/advice/cautions.h"
 #include "formats/jcamp/label_value.h"
@@ -18,10 +20,12 @@ namespace {
 
 using jcamp::Printed;
 
+// The largest ordinate that is written, a whole number of 31 bits.
+constexpr double kLargest = 2147483647.0;
+
 // The factor that makes whole numbers of at most 31 bits: 1 when they are so
 // already, else the power of two that leaves the largest 30 bits or more.
 double CommonFactor(const std::vector<double>& samples) {
-  constexpr double kLargest = 2147483647.0;
   double largest = 0;
   bool whole = true;
   for (double sample : samples) {
@@ -32,11 +36,7 @@ double CommonFactor(const std::vector<double>& samples) {
   if (largest == 0 || (whole && largest <= kLargest)) return 1;
   int exponent = 0;
   std::frexp(largest, &exponent);  // largest < 2^exponent
-  double factor = std::ldexp(1.0, exponent - 31);
-  // Rounding must not lift the largest to 2^31; below the smallest normal
-  // number a factor would lose bits itself.
-  if (std::round(largest / factor) > kLargest) factor *= 2;
-  return std::max(factor, 0x1p-1022);
+  return std::max(std::ldexp(1.0, exponent - 31), std::numeric_limits<double>::denorm_min());
 }
 
 std::vector<std::int64_t> Scaled(const std::vector<double>& samples, double factor,
@@ -44,7 +44,9 @@ std::vector<std::int64_t> Scaled(const std::vector<double>& samples, double fact
   std::vector<std::int64_t> ordinates;
   ordinates.reserve(samples.size() / stride);
   for (std::size_t i = offset; i < samples.size(); i += stride) {
-    ordinates.push_back(std::llround(sign * samples[i] / factor));
+    // Rounding must not lift the largest to 32 bits.
+    const double scaled = std::clamp(sign * samples[i] / factor, -kLargest, kLargest);
+    ordinates.push_back(std::llround(scaled));
   }
   return ordinates;
 }
@@ -197,8 +199,15 @@ void CheckWritable(const Recording& recording) {
           "a recording without spectral width or observe frequency cannot be written");
     }
   }
-  if (!std::isfinite(snapshot.centre_shift_ppm())) {
-    throw std::invalid_argument("a recording whose centre shift is no number cannot be written");
+  // An axis whose points a double cannot tell apart would not be read again.
+  const double spacing =
+      fid ? 1 / snapshot.spectral_width_hz() : snapshot.spectral_width_hz() / snapshot.points();
+  const double furthest =
+      fid ? spacing * snapshot.points()
+          : std::abs(snapshot.centre_shift_ppm()) * snapshot.observe_frequency_mhz() +
+                snapshot.spectral_width_hz();
+  if (!std::isfinite(furthest) || spacing < 1e-12 * furthest) {
+    throw std::invalid_argument("a recording with such a width and centre cannot be written");
   }
 }
 

@@ -120,6 +120,7 @@ header { display: flex; flex-wrap: wrap; gap: 0 1.5rem; align-items: baseline; }
 .skip { position: absolute; left: -99rem; }
 .skip:focus { position: static; }
 main { display: grid; gap: 1rem; grid-template-columns: repeat(auto-fill, minmax(min(22rem, 100%), 1fr)); }
+main { align-items: start; }
 main > section, main > p, main > h2 { grid-column: 1 / -1; }
 article, section, #trouble {
   background: var(--card); border: 1px solid var(--edge); border-radius: .4rem; padding: .9rem 1rem;
@@ -142,8 +143,9 @@ article, section, #trouble {
 .verdict-inspect { border: 3px solid var(--look); border-left-width: .6rem; }
 .verdict-inspect .verdict strong { background: var(--look); color: var(--card); border-color: var(--look); }
 .where, .key, footer { color: var(--soft); font-size: .92rem; }
-dl div { display: flex; flex-wrap: wrap; gap: 0 .8rem; }
-dt { flex: 0 0 11rem; color: var(--soft); }
+dl { display: grid; grid-template-columns: minmax(0, max-content) minmax(60%, 1fr); gap: .1rem 1rem; }
+dl div { display: contents; }
+dt { color: var(--soft); }
 dd { margin: 0; font-variant-numeric: tabular-nums; }
 progress { width: 100%; height: .8rem; accent-color: var(--run); display: block; }
 .findings { padding-left: 1.1rem; }
@@ -151,10 +153,11 @@ progress { width: 100%; height: .8rem; accent-color: var(--run); display: block;
 .severity-2 strong { color: var(--hard); }
 picture img { width: 100%; height: auto; display: block; max-width: 60rem; }
 .table { overflow-x: auto; }
-table { border-collapse: collapse; font-variant-numeric: tabular-nums; }
+table { border-collapse: collapse; font-variant-numeric: tabular-nums; overflow-wrap: normal; }
+td, th[scope="row"] { white-space: nowrap; }
 th, td { text-align: left; padding: .25rem 1rem .25rem 0; border-bottom: 1px solid var(--edge); }
 footer { margin-top: 1.5rem; border-top: 1px solid var(--edge); padding-top: .8rem; }
-@media (max-width: 40rem) { body { padding: .6rem; } dt { flex-basis: 100%; } }
+@media (max-width: 40rem) { body { padding: .6rem; } }
 )css";
 }
 

@@ -133,8 +133,7 @@ std::string Facts(const v1::Advice& advice) {
          Fact("Time per scan", advice.seconds_per_scan() > 0
                                    ? drawing::Number(advice.seconds_per_scan()) + " s"
                                    : "") +
-         Fact("Last snapshot", drawing::ClockTime(advice.issued_at(), advice.issued_at())) +
-         "</dl>\n</section>\n";
+         Fact("Last snapshot", drawing::ClockTime(advice.issued_at(), {})) + "</dl>\n</section>\n";
 }
 
 }  // namespace

@@ -68,7 +68,7 @@ std::string FindingsMarkup(const v1::Advice& advice) {
     if (finding.since_scan() > 0) {
       text += ", since scan " + std::to_string(finding.since_scan());
     }
-    text += ". " + ForMarkup(finding.detail()) + "</li>\n";
+    text += (finding.detail().empty() ? "" : ": ") + ForMarkup(finding.detail()) + "</li>\n";
   }
   return text + "</ul>\n";
 }

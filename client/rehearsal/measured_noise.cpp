@@ -5,6 +5,7 @@
 #include <boost/random/normal_distribution.hpp>
 #include <cmath>
 #include <complex>
+#include <string>
 #include <unsupported/Eigen/FFT>
 
 #include "rehearsal/noise_level.h"
@@ -51,8 +52,21 @@ std::vector<Complex> Shaped(std::size_t count, std::mt19937_64& random, Power po
 }  // namespace
 
 MeasuredNoise MeasureNoise(const formats::Recording& finished) {
-  return finished.snapshot.domain() == v1::FID ? MeasureFidNoise(finished.samples)
-                                               : MeasureSpectrumNoise(finished.samples);
+  constexpr std::size_t kFewestPoints = 64;
+  const bool fid = finished.snapshot.domain() == v1::FID;
+  const std::string run = "run '" + finished.snapshot.run() + "': ";
+  const std::size_t points = finished.samples.size() / (fid ? 2 : 1);
+  if (points < kFewestPoints) {
+    throw formats::Unreadable(run + "the noise cannot be measured in " + std::to_string(points) +
+                              " points: name a recording of at least " +
+                              std::to_string(kFewestPoints));
+  }
+  for (std::size_t i = 0; i < finished.samples.size(); ++i) {
+    if (std::isfinite(finished.samples[i])) continue;
+    throw formats::Unreadable(run + "point " + std::to_string(fid ? i / 2 : i) +
+                              " is not a finite number: export the recording again");
+  }
+  return fid ? MeasureFidNoise(finished.samples) : MeasureSpectrumNoise(finished.samples);
 }
 
 std::vector<double> DrawNoise(const MeasuredNoise& noise, std::size_t samples,

@@ -38,10 +38,12 @@ struct MeasuredNoise {
 // lines have no feet, and each band is read from the bins below the lines; where
 // the second half of the FID is clearly quieter than the whole, as in a crowded
 // spectrum, the second half is read. A spectrum is read in its quiet stretches.
-// REQUIRES: at least 64 points, finite samples.
+// Throws formats::Unreadable for fewer than 64 points, or a sample that is not
+// a finite number.
 MeasuredNoise MeasureNoise(const formats::Recording& finished);
 
 // The same by domain; `samples` interleaved for an FID, real for a spectrum.
+// REQUIRES: at least 64 points, finite samples.
 MeasuredNoise MeasureFidNoise(const std::vector<double>& samples);
 MeasuredNoise MeasureSpectrumNoise(const std::vector<double>& samples);
 

@@ -18,8 +18,8 @@ namespace lastscan::rehearsal {
 
 class Retrace {
  public:
-  // REQUIRES: finished.snapshot.scans_done >= 2, samples as MeasureNoise needs
-  // them. Accumulation may be SUM or MEAN; the partial recordings have the same.
+  // REQUIRES: finished.snapshot.scans_done >= 2. Throws as MeasureNoise does.
+  // Accumulation may be SUM or MEAN; the partial recordings have the same.
   Retrace(formats::Recording finished, std::uint64_t seed);
 
   // The recording as it might have stood after `scans` scans: the finished one

@@ -92,9 +92,8 @@ Requests::Requests(const v1::Settings& settings, ledger::Ledger& book, Clocks cl
     if (IsDone(run.advice)) continue;
     bool told = false;
     for (const v1::Finding& finding : run.advice.findings()) told |= finding.kind() == v1::SILENT;
-    if (told) continue;  // until its next snapshot
     silence_.Resume(run.record.run(), run.intervals_s, UnixSeconds(run.record.last_at()),
-                    clocks_.steady());
+                    clocks_.steady(), told);
   }
 }
 

@@ -30,12 +30,13 @@ void SilenceWatch::Arrived(const std::string& run, double recorded_at, double no
 }
 
 void SilenceWatch::Resume(const std::string& run, const std::vector<double>& intervals_s,
-                          double recorded_at, double now) {
+                          double recorded_at, double now, bool told) {
   Watched& watched = runs_[run];
   watched.intervals_s.assign(intervals_s.begin(), intervals_s.end());
   watched.recorded_at = recorded_at;
   watched.arrived = now;
   watched.expected_s = Median(watched.intervals_s);
+  watched.told = told;
 }
 
 void SilenceWatch::Forget(const std::string& run) { runs_.erase(run); }

@@ -31,10 +31,11 @@ class SilenceWatch {
   // not advance, the times of arrival do.
   void Arrived(const std::string& run, double recorded_at, double now);
 
-  // A run known from before a restart. Its sender gets the full time from now.
+  // A run known from before a restart. Its sender gets the full time from now,
+  // unless its silence was `told` already.
   // REQUIRES: the watch does not know the run.
   void Resume(const std::string& run, const std::vector<double>& intervals_s, double recorded_at,
-              double now);
+              double now, bool told);
 
   // The run needs no watching any more (it ended, or its goal is met).
   void Forget(const std::string& run);

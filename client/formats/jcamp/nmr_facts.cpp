@@ -26,8 +26,11 @@ class Cursor {
       ++count;
     }
     if (count < least) return {};
+    taken_ = count;
     return number;
   }
+  // How many digits the last number had.
+  int taken() const { return taken_; }
   // One character out of `any`; 0 if the next is none of them.
   char OneOf(std::string_view any) {
     if (rest_.empty() || any.find(rest_[0]) == any.npos) return 0;
@@ -43,6 +46,7 @@ class Cursor {
 
  private:
   std::string_view rest_;
+  int taken_ = 0;
 };
 
 struct ClockTime {
@@ -88,13 +92,14 @@ bool ReadClock(Cursor& cursor, ClockTime& time) {
 
 bool ReadDay(Cursor& cursor, int least_year_digits, std::chrono::year_month_day& day) {
   const auto year = cursor.Digits(least_year_digits, 4);
+  const bool short_year = cursor.taken() == 2;
   if (!year || cursor.OneOf("/-") == 0) return false;
   const auto month = cursor.Digits(1, 2);
   if (!month || cursor.OneOf("/-") == 0) return false;
   const auto of_month = cursor.Digits(1, 2);
   if (!of_month) return false;
   // Two digits of the year: no such file is older than 1970.
-  const int whole_year = *year >= 100 ? *year : *year >= 70 ? 1900 + *year : 2000 + *year;
+  const int whole_year = !short_year ? *year : *year >= 70 ? 1900 + *year : 2000 + *year;
   day = std::chrono::year(whole_year) / *month / *of_month;
   return day.ok() && whole_year >= 1900;
 }

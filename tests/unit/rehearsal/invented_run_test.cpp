@@ -42,7 +42,7 @@ std::vector<Complex> Points(const formats::Recording& recording) {
   return points;
 }
 
-// sum of points[t] exp(-pi b t / SW) exp(-2 pi i f t), by its definition.
+// sum of points[t] exp(-weight_rate t) exp(-2 pi i cycles t), by its definition.
 Complex SpectrumAt(const std::vector<Complex>& points, double cycles, double weight_rate,
                    double first_factor) {
   Complex sum = 0;

@@ -10,6 +10,8 @@
 #include <cmath>
 #include <complex>
 #include <numbers>
+#include <random>
+#include <string>
 #include <string_view>
 #include <vector>
 
@@ -104,6 +106,31 @@ TEST(MeasureNoise, FilledZerosAreNotQuietNoise) {
   EXPECT_NE(early[early.size() / 2 - 1], 0);
   EXPECT_EQ(early[early.size() / 2], 0);
   EXPECT_EQ(early.back(), 0);
+}
+
+TEST(MeasureNoise, RefusesWhatCannotBeMeasured) {
+  formats::Recording recording = InventedRun(CarbonSample(1), 20).AdvanceTo(4);
+  recording.samples[2001] = NAN;
+  const auto refusal = [](const formats::Recording& finished) -> std::string {
+    try {
+      MeasureNoise(finished);
+    } catch (const formats::Unreadable& unreadable) {
+      return unreadable.what();
+    }
+    return "";
+  };
+  EXPECT_NE(refusal(recording).find("point 1000 "), std::string::npos) << refusal(recording);
+  recording.samples.assign(2 * 63, 1.0);
+  EXPECT_NE(refusal(recording).find("63 points"), std::string::npos) << refusal(recording);
+  // The smallest there can be, of either kind, and silence.
+  recording.samples.assign(2 * 64, 0.0);
+  EXPECT_EQ(MeasureNoise(recording).rms, 0);
+  recording.snapshot.set_domain(v1::SPECTRUM);
+  recording.samples.assign(64, 0.0);
+  EXPECT_EQ(MeasureNoise(recording).rms, 0);
+  std::mt19937_64 random(21);
+  for (double& value : recording.samples) value = std::normal_distribution<double>(0, 3)(random);
+  EXPECT_NEAR(MeasureNoise(recording).rms, 3, 1);
 }
 
 // Noise that a symmetric filter has cut beyond `edge` (cycles per point).

@@ -53,7 +53,7 @@ class RequestBench : public ::testing::Test {
 
   // A recording of a small invented sample, with this goal for all.
   static rehearsal::InventedSample Sample(const std::string& run) {
-    rehearsal::InventedSample sample = rehearsal::StudySample(0.5);
+    rehearsal::InventedSample sample = rehearsal::StudySample(1.5);
     sample.run = run;
     sample.scans_planned = 4096;
     return sample;

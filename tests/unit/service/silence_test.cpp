@@ -61,16 +61,24 @@ TEST(SilenceTest, FallsBackOnArrivalsWhenThatClockStandsStill) {
 
 TEST(SilenceTest, ARestartGivesTheFullTime) {
   SilenceWatch watch(3);
-  watch.Resume("a", {10, 10, 11}, kRecorded, 5000);
+  watch.Resume("a", {10, 10, 11}, kRecorded, 5000, false);
   EXPECT_DOUBLE_EQ(*watch.NextDue(), 5030);
   // The pause of the restart itself counts as one interval, not as the usual one.
   watch.Arrived("a", kRecorded + 400, 5005);
   EXPECT_DOUBLE_EQ(*watch.NextDue(), 5005 + 3 * 10.5);
 }
 
+TEST(SilenceTest, ASilenceToldBeforeTheRestartIsNotToldAgain) {
+  SilenceWatch watch(3);
+  watch.Resume("a", {10, 10, 11}, kRecorded, 0, true);
+  EXPECT_TRUE(watch.Due(1e6).empty());
+  watch.Arrived("a", kRecorded + 400, 1e6);
+  EXPECT_DOUBLE_EQ(*watch.NextDue(), 1e6 + 3 * 10.5);
+}
+
 TEST(SilenceTest, CanBePostponedAndForgotten) {
   SilenceWatch watch(3);
-  watch.Resume("a", {10}, kRecorded, 0);
+  watch.Resume("a", {10}, kRecorded, 0, false);
   ASSERT_EQ(watch.Due(30).size(), 1U);
   watch.Postpone("a", 60);
   EXPECT_DOUBLE_EQ(*watch.NextDue(), 60);
@@ -85,8 +93,8 @@ TEST(SilenceTest, CanBePostponedAndForgotten) {
 
 TEST(SilenceTest, RunsAreWatchedApart) {
   SilenceWatch watch(3);
-  watch.Resume("slow", {1000}, kRecorded, 0);
-  watch.Resume("quick", {1}, kRecorded, 0);
+  watch.Resume("slow", {1000}, kRecorded, 0, false);
+  watch.Resume("quick", {1}, kRecorded, 0, false);
   EXPECT_DOUBLE_EQ(*watch.NextDue(), 3);
   ASSERT_EQ(watch.Due(10).size(), 1U);
   EXPECT_DOUBLE_EQ(*watch.NextDue(), 3000);
