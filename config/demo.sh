@@ -100,14 +100,11 @@ as_it_changes() {
          before = verdict
          next
        }
-       /^- / { exit }
-       NF { print; fflush() }'
+       /^- / { cautions = 1 }
+       NF && !cautions { print; fflush() }'
 }
 rehearse() {
-  "${lastscan[@]}" rehearse --scenario "$1" --obey --feed --pace 0.1 --at "$at" >"$work/rehearsal" &
-  local rehearsal=$!
-  tail -n +1 -f --pid="$rehearsal" "$work/rehearsal" | as_it_changes
-  wait "$rehearsal"
+  "${lastscan[@]}" rehearse --scenario "$1" --obey --feed --pace 0.1 --at "$at" | as_it_changes
 }
 
 say "3. A strong sample: enough long before the plan ends"

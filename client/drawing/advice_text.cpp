@@ -57,11 +57,13 @@ std::string Title(std::string_view words, const Style& style) {
 }
 
 std::string ScansDone(const v1::Advice& advice) {
-  std::string text = std::to_string(advice.scans_done());
-  if (advice.scans_planned() > 0) {
-    text += " of " + std::to_string(advice.scans_planned());
+  const std::string done = std::to_string(advice.scans_done());
+  const std::string planned = std::to_string(advice.scans_planned());
+  if (advice.scans_planned() == 0) {
+    return done;
   }
-  return text;
+  return advice.scans_done() > advice.scans_planned() ? done + " (" + planned + " planned)"
+                                                      : done + " of " + planned;
 }
 
 // True when there is a number of scans to be said.
@@ -111,9 +113,7 @@ std::string FactsOf(const v1::Advice& advice, int width) {
   }
   if (!enough) {
     facts.Add("Goal met about", ClockTimes(advice.finish_at(), advice.issued_at()));
-    if (!std::isnan(advice.chance_by_booking_end())) {
-      facts.Add("Chance in time", Brief(std::round(100 * advice.chance_by_booking_end())) + " %");
-    }
+    facts.Add("Chance in time", Chance(advice.chance_by_booking_end()));
   }
   if (advice.scans_saved() > 0) {
     std::string saved = std::to_string(advice.scans_saved()) + " scans";
@@ -139,9 +139,9 @@ std::string FactsOf(const v1::Advice& advice, int width) {
     facts.Add("Time per scan", Number(advice.seconds_per_scan()) + " s");
   }
   if (advice.noise().growth_exponent().estimate() > 0) {
-    facts.Add(
-        "Noise grows as",
-        "scans to the power " + WithLimits(advice.noise().growth_exponent()) + "; 0.5 is right");
+    facts.Add("Noise grows as", "scans to the power " +
+                                    ExponentWithLimits(advice.noise().growth_exponent()) +
+                                    "; 0.5 is right");
   }
   return facts.text();
 }

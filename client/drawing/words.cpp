@@ -85,6 +85,16 @@ std::string Brief(double value) {
   return text;
 }
 
+std::string Chance(double chance) {
+  if (std::isnan(chance)) {
+    return {};
+  }
+  if (chance > 0.99) {
+    return "over 99 %";
+  }
+  return chance < 0.01 ? "under 1 %" : Fixed(100 * chance, 0) + " %";
+}
+
 std::string Shift(double ppm) {
   return std::isfinite(ppm) && std::abs(ppm) < 1e6 ? Fixed(ppm, 2) + " ppm" : Number(ppm);
 }
@@ -100,6 +110,9 @@ std::string Scans(double value) {
 }
 
 std::string WithLimits(const v1::Interval& interval) { return Between(interval, Number); }
+std::string ExponentWithLimits(const v1::Interval& interval) {
+  return Between(interval, [](double value) { return Fixed(value, 2); });
+}
 std::string ScansWithLimits(const v1::Interval& interval) { return Between(interval, Scans); }
 
 std::string ReadingInWords(const v1::Advice& advice) {

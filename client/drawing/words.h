@@ -20,6 +20,13 @@ std::string Number(double value);
 // The same for a number that somebody has set: "10", not "10.0".
 std::string Brief(double value);
 
+// A chance of 0..1 in per cent; never quite none and never quite certain:
+// "97 %", "over 99 %", "under 1 %". Empty when it is not known.
+std::string Chance(double chance);
+
+// An exponent with its limits: "0.51 (0.50 to 0.52)".
+std::string ExponentWithLimits(const v1::Interval& interval);
+
 // A chemical shift, "128.42 ppm".
 std::string Shift(double ppm);
 

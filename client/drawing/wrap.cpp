@@ -48,7 +48,8 @@ std::string Wrapped(std::string_view text, int width, std::string_view first,
     }
     std::size_t end = std::min(text.find_first_of(" \n", begin), text.size());
     if (text.substr(end).starts_with(" %")) {
-      end += 2;  // a number keeps its per cent sign
+      // A number keeps its per cent sign, and that what follows it.
+      end = std::min(text.find_first_of(" \n", end + 2), text.size());
     }
     std::string_view word = text.substr(begin, end - begin);
     begin = end;

@@ -111,8 +111,8 @@ std::string Facts(const v1::Advice& advice) {
   const bool confirmed = advice.limiting_line().confirmed();
   const double needed = advice.scans_needed().estimate();
   std::string chance;
-  if (!enough && !std::isnan(advice.chance_by_booking_end())) {
-    chance = drawing::Brief(std::round(100 * advice.chance_by_booking_end())) + " %";
+  if (!enough) {
+    chance = drawing::Chance(advice.chance_by_booking_end());
   }
   std::string line;
   if (confirmed) {

@@ -43,11 +43,10 @@ std::string Fact(std::string_view label, std::string_view value) {
 std::string ProgressMarkup(const v1::Advice& advice) {
   const std::uint64_t total = std::max(
       {advice.scans_done(), advice.scans_planned(), advice.scans_advised(), std::uint64_t{1}});
-  std::string words = std::to_string(advice.scans_done());
+  std::string words = std::to_string(advice.scans_done()) + " scans";
   if (advice.scans_planned() > 0) {
     words += " of " + std::to_string(advice.scans_planned()) + " planned";
   }
-  words += " scans";
   if (advice.scans_advised() > 0 && advice.scans_advised() != advice.scans_planned()) {
     words += ", " + std::to_string(advice.scans_advised()) + " advised";
   }

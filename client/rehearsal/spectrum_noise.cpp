@@ -1,6 +1,7 @@
 // Noise of a real, phased spectrum from its quiet stretches.
 #include <algorithm>
 #include <bit>
+#include <boost/math/special_functions/gamma.hpp>
 #include <cmath>
 #include <complex>
 #include <numbers>
@@ -24,6 +25,8 @@ constexpr std::size_t kLongest = 1024;  // spectrum is zero-filled to many point
 constexpr std::size_t kRipple = 7;      // half width of the median against ripples
 constexpr std::size_t kSlowest = 3;     // lowest bins of a stretch: base line, feet
 constexpr double kLoudest = 1.6;        // times the lower quartile: still quiet
+constexpr double kFewestDegrees = 40;   // of freedom of a stretch's power, to tell it
+                                        // from one with lines
 
 // A strong line cut off at the end of its FID leaves a ripple of one period all
 // over the spectrum: a spike in the power along the points. It is signal; what
@@ -101,21 +104,27 @@ std::vector<double> MeanOfQuiet(const std::vector<Stretch>& stretches, std::vect
   return mean;
 }
 
-}  // namespace
+// What the stretches of one length say.
+struct Stretches {
+  std::size_t length = 0;
+  std::vector<Stretch> all;  // each begins in the middle of the one before
+  std::vector<char> quiet;
+  std::vector<double> along_points;  // of the quiet ones, mean 1
+  double degrees = 0;                // of freedom of the power of one
+};
 
-MeasuredNoise MeasureSpectrumNoise(const std::vector<double>& samples) {
-  const std::size_t length =
-      std::min(std::clamp(std::bit_floor(samples.size() / 128), kShortest, kLongest),
-               std::bit_floor(samples.size() / 4));
-  std::vector<Stretch> stretches((samples.size() - length) / (length / 2) + 1);
-  for (std::size_t i = 0; i < stretches.size(); ++i) {
-    stretches[i].powers = PowerAlong(std::span(samples).subspan(i * (length / 2), length));
-    stretches[i].power = Mean(stretches[i].powers);
+Stretches ReadStretches(const std::vector<double>& samples, std::size_t length) {
+  Stretches read;
+  read.length = length;
+  read.all.resize((samples.size() - length) / (length / 2) + 1);
+  for (std::size_t i = 0; i < read.all.size(); ++i) {
+    read.all[i].powers = PowerAlong(std::span(samples).subspan(i * (length / 2), length));
+    read.all[i].power = Mean(read.all[i].powers);
   }
   // Once to see where the ripples are, once more without them: they differ from
   // stretch to stretch, and hide which ones are quiet.
-  std::vector<char> quiet(stretches.size());
-  const std::vector<double> first = MeanOfQuiet(stretches, quiet);
+  read.quiet.resize(read.all.size());
+  const std::vector<double> first = MeanOfQuiet(read.all, read.quiet);
   const std::vector<double> clean = WithoutRipples(first);
   double of_kept = 0;
   double of_all = 0;
@@ -123,30 +132,73 @@ MeasuredNoise MeasureSpectrumNoise(const std::vector<double>& samples) {
     of_all += clean[j];
     if (clean[j] == first[j]) of_kept += clean[j];
   }
-  for (Stretch& stretch : stretches) {
+  for (Stretch& stretch : read.all) {
     double kept = 0;
     for (std::size_t j = 0; j < clean.size(); ++j) {
       if (clean[j] == first[j]) kept += stretch.powers[j];
     }
     stretch.power = of_kept > 0 ? kept / static_cast<double>(clean.size()) * (of_all / of_kept) : 0;
   }
-  MeasuredNoise noise;
-  noise.along_points = WithoutRipples(MeanOfQuiet(stretches, quiet));
-  const double mean = Mean(noise.along_points);
-  for (double& value : noise.along_points) value = mean > 0 ? value / mean : 1;
-
-  // Independent points in a stretch: the window takes half of them, the overlap
-  // another half, and the likeness of neighbours its share.
+  read.along_points = WithoutRipples(MeanOfQuiet(read.all, read.quiet));
+  const double mean = Mean(read.along_points);
   double squares = 0;
-  for (const double value : noise.along_points) squares += value * value;
-  const double independent =
-      0.25 * static_cast<double>(length) * static_cast<double>(noise.along_points.size()) / squares;
+  for (double& value : read.along_points) {
+    value = mean > 0 ? value / mean : 1;
+    squares += value * value;
+  }
+  // The window takes half of the points, the likeness of neighbours its share.
+  read.degrees =
+      0.5 * static_cast<double>(length) * static_cast<double>(read.along_points.size()) / squares;
+  return read;
+}
+
+// Powers of noise are gamma distributed; where a stretch holds few independent
+// points they scatter so much that the loudest are taken for lines. Returns the
+// true mean power over that of the quiet ones, from the mean of a gamma
+// distribution cut off above.
+double LossByCut(const Stretches& stretches) {
+  std::vector<double> powers;
+  double mean = 0;
+  double count = 0;
+  for (std::size_t i = 0; i < stretches.all.size(); ++i) {
+    powers.push_back(stretches.all[i].power);
+    if (!stretches.quiet[i]) continue;
+    mean += stretches.all[i].power;
+    count += 1;
+  }
+  mean /= count;
+  if (!(mean > 0)) return 1;
+  const double cut = kLoudest * Quantile(powers, 0.25) / mean;
+  const double shape = stretches.degrees / 2;
+  double loss = 1;
+  for (int round = 0; round < 40; ++round) {
+    const double at = shape * cut / loss;
+    loss = std::min(2.0, boost::math::gamma_p(shape, at) / boost::math::gamma_p(shape + 1, at));
+  }
+  return loss;
+}
+
+}  // namespace
+
+MeasuredNoise MeasureSpectrumNoise(const std::vector<double>& samples) {
+  Stretches stretches = ReadStretches(
+      samples, std::min(std::clamp(std::bit_floor(samples.size() / 128), kShortest, kLongest),
+                        std::bit_floor(samples.size() / 4)));
+  // Broadening and zero filling leave few independent points in a stretch.
+  while (stretches.degrees < kFewestDegrees && 32 * stretches.length <= samples.size()) {
+    stretches = ReadStretches(samples, 2 * stretches.length);
+  }
+  MeasuredNoise noise;
+  noise.along_points = stretches.along_points;
+  const double loss = LossByCut(stretches);
+  // The overlap takes half of the degrees of freedom.
+  const double independent = 0.5 * stretches.degrees;
   std::vector<double> sums(kBands, 0);
   std::vector<double> numbers(kBands, 0);
-  for (std::size_t i = 0; i < stretches.size(); ++i) {
-    if (!quiet[i]) continue;
-    const std::size_t band = (i + 1) * (length / 2) * kBands / samples.size();
-    sums[band] += stretches[i].power;
+  for (std::size_t i = 0; i < stretches.all.size(); ++i) {
+    if (!stretches.quiet[i]) continue;
+    const std::size_t band = (i + 1) * (stretches.length / 2) * kBands / samples.size();
+    sums[band] += loss * stretches.all[i].power;
     numbers[band] += 1;
   }
   std::vector<Level> bands(kBands);

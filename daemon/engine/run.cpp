@@ -139,7 +139,7 @@ void Run::State::SettlePhase(ScaledSpectrum& spectrum, const v1::Snapshot& snaps
     std::vector<LinePhase> phases;
     for (const Line& line : lines) {
       if (line.log_evidence < sure || phases.size() == kPhaseLines) continue;
-      phases.push_back({line.bin, line.reading});
+      phases.push_back(PhaseOf(spectrum, line));
     }
     return phases;
   };

@@ -203,8 +203,9 @@ void SettingsTable::ReadTable(std::string_view key,
 void SettingsTable::ReadNamed(std::string_view key,
                               const std::function<void(const std::string&, SettingsTable&)>& read) {
   ReadTable(key, [&](SettingsTable& outer) {
-    for (const auto& [name, node] : outer.table_) {
-      outer.ReadTable(name.str(), [&](SettingsTable& inner) { read(std::string(name), inner); });
+    for (const auto& entry : outer.table_) {
+      const std::string name(entry.first.str());
+      outer.ReadTable(name, [&](SettingsTable& inner) { read(name, inner); });
     }
   });
 }

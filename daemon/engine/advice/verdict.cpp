@@ -63,7 +63,8 @@ std::string Capital(std::string text) {
 
 std::string BookingEnd(const Case& facts, const Wording& wording) {
   if (!wording.limiting_event.empty()) return wording.limiting_event;
-  return facts.has_booking ? "the booking's end" : "the longest extension allowed";
+  return facts.has_booking ? "the booking's end"
+                           : "the longest extension allowed without a booking";
 }
 
 std::string Until(const v1::Advice& advice) {
@@ -178,11 +179,10 @@ std::string Because(const Case& facts, const Wording& wording) {
     }
     case v1::OUT_OF_REACH: {
       const bool confirmed = advice.limiting_line().confirmed();
-      return so_far + "; " + BookingEnd(facts, wording) + " allows " + Scans(facts.booked) +
-             " scans, which would bring it to " + (confirmed ? "about " : "at most ") +
-             Rounded(AtBookingEnd(facts, advice)) + ", and " + Target(advice) +
-             " has a chance of " + Percent(advice.chance_by_booking_end()) + ". " +
-             WhatWouldHelp(facts, advice);
+      return so_far + "; by " + BookingEnd(facts, wording) + ", at " + Scans(facts.booked) +
+             " scans, it would reach " + (confirmed ? "about " : "at most ") +
+             Rounded(AtBookingEnd(facts, advice)) + ", and the chance of " + Target(advice) +
+             " is " + Percent(advice.chance_by_booking_end()) + ". " + WhatWouldHelp(facts, advice);
     }
     case v1::INSPECT: {
       std::string text = "Look at the instrument: ";

@@ -27,6 +27,7 @@ std::string Scans(double scans) {
 }
 
 std::string Percent(double share) {
+  if (share > 0 && share < 0.001) return "less than 0.1 %";
   char text[48];
   std::snprintf(text, sizeof text, share < 0.1 ? "%.1f %%" : "%.0f %%", 100 * share);
   return text;

@@ -52,22 +52,13 @@ double HeightAt(const ScaledSpectrum& spectrum, double bin, std::complex<double>
   return (value * std::polar(1.0, -spectrum.phase->At(bin))).real();
 }
 
-// Climbs from the highest bin to the top between the bins.
-void Refine(const ScaledSpectrum& spectrum, std::span<const double> curve, Line& line) {
-  const auto j = static_cast<std::size_t>(line.nearest_bin);
-  const double left = j > 0 ? curve[j - 1] : curve[j];
-  const double right = j + 1 < curve.size() ? curve[j + 1] : curve[j];
-  if (!spectrum.complex) {
-    const Maximum top = TopOfThree(left, curve[j], right, static_cast<double>(j));
-    line.bin = top.bin;
-    line.height = top.height;
-    line.reading = top.height;
-    return;
-  }
+// Climbs from the highest bin to the top between the bins; the top of the
+// reading in phase, or of the magnitude where the phase is not known.
+void Climb(const ScaledSpectrum& spectrum, Line& line) {
   const auto value_at = [&](double bin) {
     return ValueBetweenBins(spectrum.bins, spectrum.fill_ratio, bin) / spectrum.unit;
   };
-  double best = static_cast<double>(j);
+  double best = static_cast<double>(line.nearest_bin);
   double span = 0.5;
   std::complex<double> value = value_at(best);
   double height = HeightAt(spectrum, best, value);
@@ -88,6 +79,17 @@ void Refine(const ScaledSpectrum& spectrum, std::span<const double> curve, Line&
   line.bin = best;
   line.reading = value;
   line.height = height;
+}
+
+void Refine(const ScaledSpectrum& spectrum, std::span<const double> curve, Line& line) {
+  if (spectrum.complex) return Climb(spectrum, line);
+  const auto j = static_cast<std::size_t>(line.nearest_bin);
+  const double left = j > 0 ? curve[j - 1] : curve[j];
+  const double right = j + 1 < curve.size() ? curve[j + 1] : curve[j];
+  const Maximum top = TopOfThree(left, curve[j], right, static_cast<double>(j));
+  line.bin = top.bin;
+  line.height = top.height;
+  line.reading = top.height;
 }
 
 }  // namespace
@@ -219,6 +221,24 @@ std::vector<Line> ReadLines(const ScaledSpectrum& spectrum, std::span<const doub
   return lines;
 }
 
+LinePhase PhaseOf(const ScaledSpectrum& spectrum, const Line& line) {
+  ScaledSpectrum magnitudes = spectrum;
+  magnitudes.phase.reset();
+  const auto count = static_cast<std::ptrdiff_t>(spectrum.bins.size());
+  const auto power = [&](std::ptrdiff_t bin) {
+    return std::norm(spectrum.bins[static_cast<std::size_t>(bin)]);
+  };
+  Line top = line;
+  for (const int direction : {-1, 1}) {
+    while (top.nearest_bin + direction >= 0 && top.nearest_bin + direction < count &&
+           power(top.nearest_bin + direction) > power(top.nearest_bin)) {
+      top.nearest_bin += direction;
+    }
+  }
+  Climb(magnitudes, top);
+  return {top.bin, top.reading};
+}
+
 void ApplyPhase(const PhaseModel& phase, std::span<const LinePhase> fitted, std::span<Line> lines) {
   const std::vector<double> leverages = PhaseLeverages(fitted);
   for (Line& line : lines) {
@@ -229,9 +249,10 @@ void ApplyPhase(const PhaseModel& phase, std::span<const LinePhase> fitted, std:
       line.chosen = 2;
       continue;
     }
+    // A fitted line's place is that of its magnitude, less than a width away.
     line.chosen = 1;
     for (std::size_t i = 0; i < fitted.size(); ++i) {
-      if (fitted[i].bin == line.bin) line.chosen = 1 + leverages[i];
+      if (std::abs(fitted[i].bin - line.bin) < 2) line.chosen = 1 + leverages[i];
     }
   }
 }

@@ -55,6 +55,12 @@ struct Line {
 std::vector<Line> ReadLines(const ScaledSpectrum& spectrum, std::span<const double> curve,
                             std::span<const Peak> peaks, const MixtureEvidence& evidence);
 
+// Where the magnitude near `line` is highest, and the reading there: what the
+// line tells of the phase. The place at which a line reads highest in a phase
+// agrees with that phase by construction and tells nothing.
+// REQUIRES: spectrum.complex.
+LinePhase PhaseOf(const ScaledSpectrum& spectrum, const Line& line);
+
 // Settles how lines read with `phase` count: one whose own phase follows the
 // model has chosen its position, and of the phase what its leverage says; one
 // that does not follow is read by its magnitude. `fitted` are the lines the

@@ -152,7 +152,7 @@ TEST(Advice, ColoursOnlyWhenAsked) {
 }
 
 TEST(Wrapped, LosesNoWord) {
-  const std::string text = "one two  three\nfour " + std::string(30, 'a') + " 12 % of five";
+  const std::string text = "one two  three\nfour " + std::string(30, 'a') + " 12 %: of five";
   for (int width = 12; width < 60; ++width) {
     const std::string wrapped = Wrapped(text, width, "- ", "  ");
     std::string got;
@@ -164,7 +164,7 @@ TEST(Wrapped, LosesNoWord) {
       if (c != ' ' && c != '\n') want += c;
     }
     EXPECT_EQ(got, want);
-    EXPECT_THAT(wrapped, HasSubstr("12 %"));
+    EXPECT_THAT(wrapped, HasSubstr("12 %:"));
   }
 }
 

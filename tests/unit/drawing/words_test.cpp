@@ -63,6 +63,14 @@ TEST(WithLimits, SaysAnInfiniteUpperLimitInWords) {
   EXPECT_EQ(WithLimits(Between(kNone, 1, 2)), "not known");
 }
 
+TEST(Chance, IsNeverQuiteNoneAndNeverQuiteCertain) {
+  EXPECT_EQ(Chance(0.973), "97 %");
+  EXPECT_EQ(Chance(1), "over 99 %");
+  EXPECT_EQ(Chance(0), "under 1 %");
+  EXPECT_EQ(Chance(kNone), "");
+  EXPECT_EQ(ExponentWithLimits(Between(0.507, 0.5, 0.514)), "0.51 (0.50 to 0.51)");
+}
+
 TEST(ReadingInWords, AnUnconfirmedLineHasOnlyAnUpperLimit) {
   v1::Advice advice = test::LawfulAdvice(64);
   ASSERT_FALSE(advice.limiting_line().confirmed());

@@ -108,7 +108,7 @@ class RunRefusals : public ::testing::Test {
   std::vector<Sent> sent_ = Snapshots(OneLine(1), Every(32, 4), WindowGoal(20));
 
   // Spoils `sound` by each of `faults` and offers it to `run`.
-  void ExpectRefused(Run& run, const Sent& sound, const std::vector<Fault>& faults) {
+  void ExpectRefused(engine::Run& run, const Sent& sound, const std::vector<Fault>& faults) {
     const std::string advice = run.advice().SerializeAsString();
     const std::string state = run.Save();
     for (const Fault& fault : faults) {

@@ -30,12 +30,6 @@ std::vector<Sent> EventfulNight() {
   return sent;
 }
 
-std::vector<std::string> Serialized(const std::vector<v1::Advice>& advice) {
-  std::vector<std::string> bytes;
-  for (const v1::Advice& each : advice) bytes.push_back(each.SerializeAsString());
-  return bytes;
-}
-
 TEST(RunState, LoadedAfterAnySnapshotItGoesOnToTheByte) {
   const std::vector<Sent> sent = EventfulNight();
   const std::vector<v1::Advice> uninterrupted = Played(sent);

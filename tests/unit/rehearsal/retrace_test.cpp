@@ -226,6 +226,21 @@ TEST(MeasureNoiseOfSpectrum, RightWithinThreePercentUnderStrongLines) {
   }
 }
 
+// Broadened by some line widths, few points of a stretch are independent.
+TEST(MeasureNoiseOfSpectrum, RightWithinThreePercentUnderMuchBroadening) {
+  for (const double broadening : {2.0, 3.5}) {
+    InventedSample sample = CarbonSample(1);
+    sample.broadening_hz = broadening;
+    double mean = 0;
+    for (int i = 0; i < 6; ++i) {
+      const double ratio = MeasureNoise(SpectrumOf(sample, 400 + i)).rms / TrueRms(sample);
+      EXPECT_NEAR(ratio, 1, 0.05) << broadening << " Hz";
+      mean += ratio / 6;
+    }
+    EXPECT_NEAR(mean, 1, 0.03) << broadening << " Hz";
+  }
+}
+
 // A narrow line is cut off at the end of the FID: its ripple is all over the
 // spectrum and as high as the noise or higher far from the line.
 TEST(MeasureNoiseOfSpectrum, RippleOfACutOffLineIsNoNoise) {
