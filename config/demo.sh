@@ -118,13 +118,13 @@ say "6. The ledger keeps what was advised and what was reached"
 "${lastscan[@]}" ledger --at "$at"
 
 say "Where to look next"
-cat <<NEXT
-  README.md                        how to connect a real spectrometer
-  config/lastscan.toml             every setting, explained in place
-  $build/lastscan rehearse --list      more invented runs, with faults
-  $build/lastscan assess FILE...       the same advice on files, without a daemon
-  $build/lastscan page                 all runs on a web page
-NEXT
+tool=${build#"$root/"}/lastscan
+next() { printf '  %-34s %s\n' "$1" "$2"; }
+next "README.md" "how to connect a real spectrometer"
+next "config/lastscan.toml" "every setting, explained in place"
+next "$tool rehearse --list" "more invented runs, with faults"
+next "$tool assess FILE..." "the same advice on files, without a daemon"
+next "$tool page" "all runs on a web page"
 if [[ $keep == yes ]]; then
   cat <<NEXT
 The demo's folder stays: $work

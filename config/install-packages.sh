@@ -14,7 +14,7 @@ build=(g++ cmake ninja-build pkg-config libzmq3-dev cppzmq-dev libprotobuf-dev p
   # CMakeLists.txt names the tests' and benches' libraries too.
   libgtest-dev libgmock-dev)
 test=(libbenchmark-dev python3 python3-numpy python3-scipy python3-zmq python3-protobuf
-  ca-certificates curl tmux)
+  ca-certificates openssl tmux)
 sanitizers=(clang libclang-rt-14-dev)
 browser=(chromium fonts-dejavu-core)
 

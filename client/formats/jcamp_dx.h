@@ -42,6 +42,9 @@ bool LooksLikeJcampDx(std::string_view text);
 // stands; one in Hz is divided by the observe frequency and, when the file states
 // a shift reference, moved so that the named point (in file order) has that shift.
 //
+// A file that does not state its observe frequency is read with none, and then
+// without a shift at the centre; an abscissa in ppm needs one.
+//
 // A time without an offset from UTC is local time. A time that cannot be read
 // leaves recorded_at unset.
 //

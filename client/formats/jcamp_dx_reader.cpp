@@ -141,6 +141,17 @@ void PlaceSpectrum(const Abscissa& abscissa, const std::string& unit, std::size_
                    ": Lastscan reads spectra in HZ or PPM; export the file in one of these");
   }
   const bool hertz = unit == "HZ";
+  snapshot.set_reversed(abscissa.spacing() > 0);
+  if (frequency == 0) {
+    if (!hertz) {
+      Fail(line,
+           "an abscissa in PPM without .OBSERVE FREQUENCY says no width in Hz: add the line "
+           "'##.OBSERVE FREQUENCY= ' with the frequency in MHz, or export the file again");
+    }
+    snapshot.set_spectral_width_hz(static_cast<double>(abscissa.points) *
+                                   std::abs(abscissa.spacing()));
+    return;
+  }
   const double ppm_per_unit = hertz ? 1 / frequency : 1;
   const double spacing_ppm = abscissa.spacing() * ppm_per_unit;
   const double middle = 0.5 * static_cast<double>(abscissa.points - 1);
@@ -152,7 +163,6 @@ void PlaceSpectrum(const Abscissa& abscissa, const std::string& unit, std::size_
   snapshot.set_spectral_width_hz(static_cast<double>(abscissa.points) * std::abs(spacing_ppm) *
                                  frequency);
   snapshot.set_centre_shift_ppm(centre);
-  snapshot.set_reversed(abscissa.spacing() > 0);
   recording.has_centre_shift = true;
 }
 
@@ -194,7 +204,8 @@ void ReadFid(const Block& block, Recording& recording) {
   snapshot.set_points(static_cast<std::uint32_t>(abscissa.points));
   const double width = 1 / abscissa.spacing();
   snapshot.set_spectral_width_hz(width);
-  if (const auto reference = jcamp::ReadShiftReference(block)) {
+  const auto reference = jcamp::ReadShiftReference(block);
+  if (reference && snapshot.observe_frequency_mhz() > 0) {
     // Point 1 of the would-be spectrum lies half its width above zero frequency.
     const double below = 0.5 - (reference->point - 1) / static_cast<double>(abscissa.points);
     snapshot.set_centre_shift_ppm(reference->shift_ppm -

@@ -71,7 +71,7 @@ void RequireFacts(const Recording& recording, const std::string& name) {
     missing("the nucleus (.OBSERVE NUCLEUS)", "supply it with --nucleus NAME");
   }
   if (!(snapshot.observe_frequency_mhz() > 0)) {
-    missing("the observe frequency (.OBSERVE FREQUENCY)", "export the file with it");
+    missing("the observe frequency (.OBSERVE FREQUENCY)", "supply it with --observe-frequency MHZ");
   }
   if (!(snapshot.spectral_width_hz() > 0)) {
     missing("the spectral width", "export the file with it");

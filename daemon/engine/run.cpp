@@ -186,7 +186,7 @@ const v1::Advice& Run::State::Admit(const v1::Snapshot& snapshot, std::string_vi
   const double broadening =
       CompletedGoal(snapshot.goal(), DefaultsFor(settings_, snapshot.nucleus()).goal())
           .broadening_hz();
-  CheckBroadening(begins ? broadening : question_.goal.broadening_hz(), broadening, snapshot);
+  if (!begins) CheckBroadening(question_.goal.broadening_hz(), broadening, snapshot);
   std::optional<Transform> fresh;
   if (begins) fresh.emplace(snapshot, broadening);
   const Transform& transform = begins ? *fresh : *transform_;
@@ -218,6 +218,7 @@ const v1::Advice& Run::State::Admit(const v1::Snapshot& snapshot, std::string_vi
   smallest_increment_ = begins ? increment : std::min(smallest_increment_, increment);
   if (question.key != question_.key) {  // another goal: nothing said of the old one holds
     confirmed_windows_.clear();
+    confirmed_lines_ = 0;
     advice_.clear_verdict();
   }
   question_ = std::move(question);
@@ -297,7 +298,7 @@ const v1::Advice& Run::State::Admit(const v1::Snapshot& snapshot, std::string_vi
   facts.final = snapshot.final();
   OutlookQuestion ahead;
   ahead.scans = scans;
-  ahead.planned = std::min(facts.planned, facts.booked);
+  ahead.planned = facts.planned;
   ahead.booked = facts.booked;
   ahead.target = question_.goal.target() / matter.factor;
   ahead.tolerance = question_.goal.tolerance();
@@ -365,7 +366,7 @@ std::string Run::State::Save() const {
   growth_.SaveTo(saved);
   findings_.SaveTo(saved);
   *saved.mutable_advice() = advice_;
-  return saved.SerializeAsString();
+  return Sealed(saved.SerializeAsString());
 }
 
 void Run::State::Restore(const state::Run& saved) {
@@ -397,6 +398,12 @@ void Run::State::Restore(const state::Run& saved) {
   findings_.RestoreFrom(saved);
   advice_ = saved.advice();
   question_ = QuestionOf(latest_, transform);
+  if (question_.goal.SerializeAsString() != advice_.goal().SerializeAsString()) {
+    // The settings have changed in between. What was confirmed, and the spectra
+    // that were added up, are of the goal before: the next snapshot meets that.
+    question_.goal = advice_.goal();
+    question_.key.clear();
+  }
   transform_.emplace(transform);
 }
 
@@ -415,8 +422,9 @@ std::string Run::Save() const { return state_->Save(); }
 
 Run Run::Load(v1::EngineSettings settings, std::string_view state) {
   state::Run saved;
-  if (!saved.ParseFromArray(state.data(), static_cast<int>(state.size()))) {
-    throw Refusal("the saved run is damaged: it cannot be read");
+  const std::string_view message = Unsealed(state);
+  if (!saved.ParseFromArray(message.data(), static_cast<int>(message.size()))) {
+    throw Refusal("the saved run cannot be read: send its snapshots again under a new run name");
   }
   Run run(std::move(settings));
   run.state_->Restore(saved);

@@ -1,7 +1,7 @@
 #include "engine/saved_arrays.h"
 
+#include <cstdint>
 #include <cstring>
-#include <string>
 
 #include "engine/refusal.h"
 
@@ -10,18 +10,16 @@ namespace {
 
 // FNV-1a over 64-bit words (Fowler, Noll and Vo): finds a torn or flipped blob,
 // is no defence against forgery.
-std::uint64_t Checksum(const std::string& a, const std::string& b) {
+std::uint64_t Checksum(std::string_view bytes) {
   std::uint64_t hash = 0xcbf29ce484222325;
-  for (const std::string* bytes : {&a, &b}) {
-    std::size_t i = 0;
-    for (; i + 8 <= bytes->size(); i += 8) {
-      std::uint64_t word;
-      std::memcpy(&word, bytes->data() + i, 8);
-      hash = (hash ^ word) * 0x100000001b3;
-    }
-    for (; i < bytes->size(); ++i) {
-      hash = (hash ^ static_cast<unsigned char>((*bytes)[i])) * 0x100000001b3;
-    }
+  std::size_t i = 0;
+  for (; i + 8 <= bytes.size(); i += 8) {
+    std::uint64_t word;
+    std::memcpy(&word, bytes.data() + i, 8);
+    hash = (hash ^ word) * 0x100000001b3;
+  }
+  for (; i < bytes.size(); ++i) {
+    hash = (hash ^ static_cast<unsigned char>(bytes[i])) * 0x100000001b3;
   }
   return hash;
 }
@@ -35,21 +33,37 @@ void SaveArrays(const Scatter& scatter, state::Run& saved) {
                                   scatter.values().size() * sizeof(float));
   saved.set_scans(scatter.scans());
   saved.set_increments(scatter.increments());
-  saved.set_checksum(Checksum(saved.sum(), saved.scatter()));
 }
 
 void RestoreArrays(const state::Run& saved, std::size_t bins, Scatter& scatter) {
   if (saved.sum().size() != bins * sizeof(std::complex<float>) ||
-      saved.scatter().size() != bins * sizeof(float) ||
-      saved.checksum() != Checksum(saved.sum(), saved.scatter())) {
+      saved.scatter().size() != bins * sizeof(float)) {
     throw Refusal("the saved state of run '" + saved.latest().run() +
-                  "' is damaged: its checksum or size is wrong");
+                  "' holds another number of bins than its snapshots have: send them again under "
+                  "a new run name");
   }
   std::vector<std::complex<float>> sum(bins);
   std::vector<float> values(bins);
   std::memcpy(static_cast<void*>(sum.data()), saved.sum().data(), saved.sum().size());
   std::memcpy(values.data(), saved.scatter().data(), saved.scatter().size());
   scatter.Restore(std::move(sum), std::move(values), saved.scans(), saved.increments());
+}
+
+std::string Sealed(std::string message) {
+  const std::uint64_t checksum = Checksum(message);
+  return message.append(reinterpret_cast<const char*>(&checksum), sizeof checksum);
+}
+
+std::string_view Unsealed(std::string_view sealed) {
+  std::uint64_t checksum = 0;
+  if (sealed.size() >= sizeof checksum) {
+    const std::string_view message = sealed.substr(0, sealed.size() - sizeof checksum);
+    std::memcpy(&checksum, sealed.data() + message.size(), sizeof checksum);
+    if (checksum == Checksum(message)) return message;
+  }
+  throw Refusal(
+      "the saved run is damaged, its checksum is wrong: send its snapshots again under a new run "
+      "name");
 }
 
 }  // namespace lastscan::engine

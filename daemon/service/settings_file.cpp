@@ -231,7 +231,15 @@ std::string TextOf(const std::string& path) {
   return text;
 }
 
+std::string Printable(std::string line) {
+  std::replace_if(
+      line.begin(), line.end(), [](unsigned char c) { return c < ' ' || c == 0x7f; }, '?');
+  return line;
+}
+
 }  // namespace
+
+SettingsError::SettingsError(std::string line) : std::runtime_error(Printable(line)) {}
 
 v1::Settings EmbeddedSettings() { return Placed(Unplaced()); }
 

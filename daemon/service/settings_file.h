@@ -14,7 +14,9 @@ namespace lastscan::service {
 // impossible value. what() is one line: file, line, key, what is wrong, what to do.
 class SettingsError : public std::runtime_error {
  public:
-  using std::runtime_error::runtime_error;
+  // Control characters, which keys and values of a file may bring along, become
+  // question marks: an error stays one line.
+  explicit SettingsError(std::string line);
 };
 
 // The settings without any file, places (places.h) filled in.

@@ -106,7 +106,9 @@ TEST(PublishedConventions, PeakToPeakIsTwoAndAHalfHeightsOverThePeakToPeakNoise)
 
 // The goal of who names none is the quantitation limit, stated as height to rms.
 TEST(PublishedConventions, TheDefaultGoalIsTheQuantitationLimit) {
-  for (const v1::NucleusDefaults& defaults : DefaultSettings().nuclei()) {
+  const v1::EngineSettings settings = DefaultSettings();
+  ASSERT_GT(settings.nuclei_size(), 0);
+  for (const v1::NucleusDefaults& defaults : settings.nuclei()) {
     EXPECT_EQ(defaults.goal().target(), 10) << defaults.nucleus();
     EXPECT_EQ(defaults.goal().convention(), v1::HEIGHT_OVER_RMS) << defaults.nucleus();
   }
@@ -136,7 +138,7 @@ TEST(PublishedConventions, ABlankShowsTheDetectionLimitAndIsNeverTakenForALine) 
   EXPECT_GT(ExpectedRange(500) / 2, 3);
   for (const std::uint64_t seed : {1, 2, 3, 4, 5}) {
     rehearsal::InventedRun blank(Sample(0), seed);
-    Run run(DefaultSettings());
+    engine::Run run(DefaultSettings());
     for (std::uint64_t scans = 8; scans <= 256; scans += 8) {
       const formats::Recording look = Look(blank, scans, 3);
       const v1::Advice& advice = run.Admit(look.snapshot, formats::AsFrame(look.samples));
@@ -152,7 +154,7 @@ TEST(PublishedConventions, ABlankShowsTheDetectionLimitAndIsNeverTakenForALine) 
 TEST(PublishedConventions, TheQuantitationLimitEndsTheRun) {
   for (const double at_end : {5.0, 20.0}) {
     rehearsal::InventedRun invented(Sample(at_end / 16), 7);
-    Run run(DefaultSettings());
+    engine::Run run(DefaultSettings());
     bool enough = false;
     for (std::uint64_t scans = 8; scans <= 256; scans += 8) {
       const formats::Recording look = Look(invented, scans, 10);

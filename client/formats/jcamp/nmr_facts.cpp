@@ -182,17 +182,12 @@ void ReadFacts(const Block& block, Recording& recording) {
 
   const Record* frequency_record = block.Find(".OBSERVEFREQUENCY");
   const std::optional<double> frequency = NumberOf(frequency_record);
-  if (!frequency) {
-    throw Unreadable(
-        "the observe frequency is missing, which every NMR file must state: add the line "
-        "'##.OBSERVE FREQUENCY= ' with the frequency in MHz, or export the file again");
-  }
   // From the earth's field (kHz) to what no magnet reaches.
-  if (*frequency < 1e-4 || *frequency > 1e4) {
+  if (frequency && (*frequency < 1e-4 || *frequency > 1e4)) {
     Fail(frequency_record->line, "an observe frequency of " + Printed(*frequency) +
                                      " MHz cannot be: the standard wants it in MHz; correct it");
   }
-  snapshot.set_observe_frequency_mhz(*frequency);
+  snapshot.set_observe_frequency_mhz(frequency.value_or(0));
   snapshot.set_scans_done(CountOf(block.Find(".AVERAGES")).value_or(0));
 
   std::optional<google::protobuf::Timestamp> recorded_at =

@@ -20,8 +20,8 @@ struct ShiftReference {
 };
 
 // Title, sample, instrument, solvent, nucleus, observe frequency, scans done and
-// the time recorded, as far as stated. Throws Unreadable when a number is none or
-// cannot be true.
+// the time recorded, as far as stated (observe frequency and scans done: else 0). Throws Unreadable
+// when a number is none or cannot be true.
 void ReadFacts(const Block& block, Recording& recording);
 
 // Nothing when there is none or its point and shift are not numbers: such a line

@@ -123,25 +123,26 @@ v1::Verdict Judge(const Case& facts, const std::vector<v1::Finding>& findings) {
 
 std::uint64_t ScansAdvised(v1::Verdict verdict, const Case& facts) {
   const std::uint64_t now = WholeCycles(facts.scans, facts.phase_cycle);
+  double scans = facts.planned;
   switch (verdict) {
     case v1::ENOUGH:
     case v1::OUT_OF_REACH:
       return now;
     case v1::ON_COURSE:
-    case v1::EXTEND: {
-      double scans = std::max(facts.outlook.scans_to_threshold, facts.scans);
+    case v1::EXTEND:
+      scans = std::max(facts.outlook.scans_to_threshold, facts.scans);
       if (verdict == v1::ON_COURSE && facts.planned > 0) scans = std::min(scans, facts.planned);
-      if (std::isfinite(facts.booked)) {
-        // A whole cycle that no longer fits the booking is not advised.
-        const double fits = std::floor(facts.booked / facts.phase_cycle) * facts.phase_cycle;
-        if (scans > fits) return std::max(now, static_cast<std::uint64_t>(fits));
-      }
-      if (!(scans < 1e18)) return now;
-      return std::max(now, WholeCycles(scans, facts.phase_cycle));
-    }
+      break;
     default:
-      return std::max(now, static_cast<std::uint64_t>(facts.planned));
+      break;  // the plan, until more is known
   }
+  if (std::isfinite(facts.booked)) {
+    // A whole cycle that no longer fits the booking is not advised.
+    const double fits = std::floor(facts.booked / facts.phase_cycle) * facts.phase_cycle;
+    if (scans > fits) return std::max(now, static_cast<std::uint64_t>(fits));
+  }
+  if (!(scans < 1e18)) return now;
+  return std::max(now, WholeCycles(scans, facts.phase_cycle));
 }
 
 std::string Because(const Case& facts, const Wording& wording) {

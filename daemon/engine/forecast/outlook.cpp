@@ -43,7 +43,8 @@ Outlook LookAhead(const Survey& survey, const OutlookQuestion& question) {
     const double threshold = std::max(question.target, limit + margin * reading.deviation);
     outlook.stop_rule_met =
         outlook.stop_rule_met && requirement.confirmed && reading.estimate >= threshold;
-    const double by_plan = Chance(requirement, threshold, question.scans, question.planned);
+    const double by_plan =
+        Chance(requirement, threshold, question.scans, std::min(question.planned, question.booked));
     const double by_booking = Chance(requirement, threshold, question.scans, question.booked);
     if (requirement.confirmed) {
       outlook.chance_by_plan *= by_plan;

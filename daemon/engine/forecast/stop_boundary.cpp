@@ -75,8 +75,11 @@ double CrossingProbability(std::span<const double> times, std::span<const double
     const double high = std::min(bound, mean + kReach * root);
     if (low >= high) return crossed;
     const double step = k + 1 < times.size() ? std::sqrt(times[k + 1] - t) : root;
+    // The last step has left its mark at the boundary: what crossed is missing
+    // there, over about one deviation of that step.
+    const double last_step = density.values.empty() ? root : std::sqrt(t - previous);
     // Evenly spaced looks share one grid, rounding apart: see same_grid below.
-    double cell = step / kCellsPerStep;
+    double cell = std::min(step, last_step) / kCellsPerStep;
     if (std::abs(cell - density.cell) < 1e-6 * cell) cell = density.cell;
     Density next;
     next.cell = cell;

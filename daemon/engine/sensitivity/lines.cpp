@@ -10,21 +10,52 @@ namespace lastscan::engine {
 namespace {
 
 constexpr std::size_t kMostPeaks = 512;  // a spectrum with more is read by its strongest
+constexpr double kDecayed = 5;           // width times length of an FID without ripple
+constexpr std::size_t kMostFeet = 64;    // those of the strongest lines
 
-// How the foot of a line falls off. `decay` = pi times its full width, per
-// second. Absorption falls as 1/offset^2, a magnitude as 1/offset; an FID cut
-// off before it has decayed adds ripple that falls as 1/offset.
+// How the foot of a line falls off: as 1/offset^2 in phase, as 1/offset in a
+// magnitude. An FID cut off before it has decayed adds ripple that falls as
+// 1/offset: from dip to top 2 c/(1-c) of the height at the line, c the share of
+// the signal that is left at the end.
 struct Foot {
   double bin;
-  double height;
-  double decay;
-  double cut;  // what is left of the signal when the FID ends
+  double height;  // that the line would have if its FID were not cut off
+  double ripple;  // dip to top, at the line
+  double decay;   // of the line, broadening included, per second
 
-  double RippleAt(double offset_hz) const {
-    const double radians = 2 * std::numbers::pi * offset_hz;
-    return height * 2 * cut / (1 - cut) * decay / std::hypot(decay, radians);
+  // The line's shape at another bin, 1 at its own. The spectrum is periodic.
+  double FallTo(double bin_there, const Axis& axis) const {
+    const double width = axis.hz_per_bin * static_cast<double>(axis.bins);
+    const double turn = std::numbers::pi * (bin - bin_there) / static_cast<double>(axis.bins);
+    const double radians = 2 * width * std::sin(turn);
+    return decay / std::sqrt(decay * decay + radians * radians);
   }
 };
+
+// The decay of a line, times the FID's length `seconds`, that makes its width at
+// half height `width_hz`: a cut-off FID is broader than its decay alone. Of
+// s = (1 - c exp(-i w T))/(d + i w) the power falls to half in a magnitude, the
+// real part in a reading in phase.
+double DecayOverFid(double width_hz, double seconds, bool magnitude) {
+  const double angle = std::numbers::pi * width_hz * seconds;
+  const auto too_wide = [&](double decay) {
+    const double left = std::exp(-decay);
+    const double scale = decay / (1 - left);
+    const double squares = decay * decay + angle * angle;
+    if (magnitude) {
+      return scale * scale * (1 + left * left - 2 * left * std::cos(angle)) > 0.5 * squares;
+    }
+    return scale * (decay * (1 - left * std::cos(angle)) + angle * left * std::sin(angle)) >
+           0.5 * squares;
+  };
+  double low = 1e-3;
+  double high = std::max(angle, 2 * low);
+  for (int round = 0; round < 24; ++round) {
+    const double middle = 0.5 * (low + high);
+    (too_wide(middle) ? high : low) = middle;
+  }
+  return low;
+}
 
 // Width at half height of a Lorentzian, from where the power (magnitudes) or
 // the curve (real readings) falls to half, interpolated on both sides.
@@ -172,14 +203,19 @@ std::vector<Line> ReadLines(const ScaledSpectrum& spectrum, std::span<const doub
   std::vector<Line> lines;
   std::vector<Foot> feet;
   for (const Peak& peak : peaks.first(std::min(peaks.size(), kMostPeaks))) {
-    // Noise riding on a foot dips by up to three rms between its tops; only
-    // what rises above that is the line's own.
-    const double own = peak.height - peak.saddle - std::min(peak.saddle, 3.0);
+    double foot = 0;
     double ripple = 0;
-    for (const Foot& foot : feet) {
-      ripple +=
-          foot.RippleAt((foot.bin - static_cast<double>(peak.bin)) * spectrum.axis.hz_per_bin);
+    for (const Foot& stronger : feet) {
+      const double fall = stronger.FallTo(static_cast<double>(peak.bin), spectrum.axis);
+      foot += stronger.height * (magnitude ? fall : fall * fall);
+      ripple += stronger.ripple * fall;
     }
+    // Noise riding on a foot dips by up to three rms between its tops; only
+    // what rises above that is the line's own. On a low foot it dips to zero,
+    // and the stronger lines tell how high it is.
+    const double stands_on =
+        std::max(peak.saddle + std::min(peak.saddle, 3.0), std::min(foot, peak.saddle + 3.0));
+    const double own = peak.height - stands_on;
     if (own <= 2 * ripple || own <= 0) continue;
 
     Line line;
@@ -193,10 +229,9 @@ std::vector<Line> ReadLines(const ScaledSpectrum& spectrum, std::span<const doub
     line.chosen = spectrum.complex ? 2 : 1;
 
     // Evidence summed over the line's bins, at the height that is its own.
-    const double foot_height = std::min(peak.height - own, 0.5 * peak.height);
     const auto count = static_cast<std::ptrdiff_t>(curve.size());
     double sum = 0;
-    const double top = evidence.LogEvidence(std::max(peak.height - foot_height, 0.0));
+    const double top = evidence.LogEvidence(own);
     for (int direction : {-1, 1}) {
       for (std::ptrdiff_t j = direction < 0 ? peak.bin : peak.bin + 1;
            j >= 0 && j < count && curve[static_cast<std::size_t>(j)] > 0.5 * peak.height;
@@ -205,19 +240,28 @@ std::vector<Line> ReadLines(const ScaledSpectrum& spectrum, std::span<const doub
         const double z =
             spectrum.complex ? std::abs(spectrum.bins[index]) / spectrum.unit : curve[index];
         // Never more than the top bin gives: phase must not add evidence.
-        const double less = std::max(std::min(z, peak.height) - foot_height, 0.0);
+        const double less = std::max(std::min(z, peak.height) - stands_on, 0.0);
         sum += std::exp(std::min(evidence.LogEvidence(less) - top, 0.0));
       }
     }
     line.log_evidence = top + std::log(std::max(sum, 1e-300));
 
-    const double decay = std::numbers::pi * line.width_hz;
-    const double cut = spectrum.acquisition_seconds > 0
-                           ? std::min(std::exp(-decay * spectrum.acquisition_seconds), 0.9)
-                           : 0;
-    feet.push_back({line.bin, line.height, decay, cut});
     lines.push_back(line);
+
+    if (feet.size() == kMostFeet) continue;
+    const double seconds = spectrum.acquisition_seconds;
+    const double height = line.height - stands_on;
+    Foot own_foot{line.bin, height, 0, std::numbers::pi * line.width_hz};
+    if (seconds > 0 && line.width_hz * seconds < kDecayed) {
+      const double decay = DecayOverFid(line.width_hz, seconds, magnitude);
+      const double left = std::exp(-decay);
+      own_foot = {line.bin, height / (1 - left), 2 * height * left / (1 - left), decay / seconds};
+    }
+    feet.push_back(own_foot);
   }
+  // Reading between the bins can change places.
+  std::stable_sort(lines.begin(), lines.end(),
+                   [](const Line& a, const Line& b) { return a.height > b.height; });
   return lines;
 }
 

@@ -39,6 +39,15 @@ std::vector<float> EmptyBins(const ScaledSpectrum& spectrum, std::span<const dou
   return readings;
 }
 
+// `lines` by falling height, then `others` by falling evidence.
+void Rank(std::vector<const Line*>& lines, std::vector<const Line*>& others) {
+  std::stable_sort(lines.begin(), lines.end(),
+                   [](const Line* a, const Line* b) { return a->height > b->height; });
+  std::stable_sort(others.begin(), others.end(),
+                   [](const Line* a, const Line* b) { return a->log_evidence > b->log_evidence; });
+  lines.insert(lines.end(), others.begin(), others.end());
+}
+
 // An unconfirmed requirement: no number, an upper limit.
 void SetUnseen(Requirement& requirement, std::span<const float> readings, int quadratures) {
   requirement.posterior = AmplitudePosterior::OfUnseen(readings, quadratures);
@@ -96,31 +105,42 @@ Survey LookAt(const ScaledSpectrum& spectrum, std::span<const double> curve,
         static_cast<double>(CountOf((*options.windows)[static_cast<std::size_t>(window)])) / share);
   };
 
-  std::vector<const Line*> best(options.windows->size(), nullptr);
+  // What is confirmed now comes first, by height; then the rest, by evidence: a
+  // high peak on another line's foot has little of its own.
+  std::vector<const Line*> ranked;
+  std::vector<const Line*> rest;
+  std::vector<std::vector<const Line*>> in_window(options.windows->size());
+  std::vector<std::vector<const Line*>> rest_of_window(options.windows->size());
   survey.confirmed_windows.assign(options.windows->size(), false);
-  for (std::size_t w = 0; w < options.confirmed_windows.size() && w < best.size(); ++w) {
+  for (std::size_t w = 0; w < options.confirmed_windows.size() && w < in_window.size(); ++w) {
     survey.confirmed_windows[w] = options.confirmed_windows[w];
   }
-  std::vector<const Line*> eligible;
   for (const Line& line : lines) {
     if (!Contains(*options.everywhere, static_cast<double>(line.nearest_bin))) continue;
     survey.strongest = std::max(survey.strongest, line.height);
-    eligible.push_back(&line);
     const int window = window_of(static_cast<double>(line.nearest_bin));
     bool confirmed = line.log_evidence >= everywhere_level;
     if (window >= 0) {
       const auto w = static_cast<std::size_t>(window);
-      if (best[w] == nullptr) best[w] = &line;
-      if (line.log_evidence >= window_level(window)) {
+      const bool in_its_window = line.log_evidence >= window_level(window);
+      (in_its_window ? in_window : rest_of_window)[w].push_back(&line);
+      if (in_its_window) {
         confirmed = true;
         survey.confirmed_windows[w] = true;
       }
     }
+    (confirmed ? ranked : rest).push_back(&line);
     if (confirmed) {
       survey.lines.push_back(
           {line, ReadingOf(line.height, line.chosen, options.noise_deviation), window});
     }
   }
+  // Applying the phase can have changed places.
+  std::stable_sort(
+      survey.lines.begin(), survey.lines.end(),
+      [](const SurveyedLine& a, const SurveyedLine& b) { return a.line.height > b.line.height; });
+  Rank(ranked, rest);
+  for (std::size_t w = 0; w < in_window.size(); ++w) Rank(in_window[w], rest_of_window[w]);
   // Once confirmed, always confirmed: evidence was there, that is what counts.
   survey.confirmed_lines =
       std::max(options.confirmed_lines, static_cast<std::uint32_t>(survey.lines.size()));
@@ -128,25 +148,24 @@ Survey LookAt(const ScaledSpectrum& spectrum, std::span<const double> curve,
   if (options.lines_wanted > 0) {
     Requirement requirement;
     const std::size_t index = options.lines_wanted - 1;
-    if (survey.confirmed_lines > index && eligible.size() > index) {
-      SetSeen(requirement, *eligible[index], options);
+    if (survey.confirmed_lines > index && ranked.size() > index) {
+      SetSeen(requirement, *ranked[index], options);
     } else {
-      if (eligible.size() > survey.lines.size()) {
-        requirement.line = *eligible[survey.lines.size()];
-      }
+      if (ranked.size() > survey.lines.size()) requirement.line = *ranked[survey.lines.size()];
       SetUnseen(requirement, EmptyBins(spectrum, curve, *options.everywhere, survey.lines),
                 spectrum.quadratures() == 2 && !spectrum.phase ? 2 : 1);
     }
     survey.requirements.push_back(std::move(requirement));
     return survey;
   }
-  for (std::size_t w = 0; w < best.size(); ++w) {
+  for (std::size_t w = 0; w < in_window.size(); ++w) {
     Requirement requirement;
     requirement.window = static_cast<int>(w);
-    if (survey.confirmed_windows[w] && best[w] != nullptr) {
-      SetSeen(requirement, *best[w], options);
+    const Line* best = in_window[w].empty() ? nullptr : in_window[w].front();
+    if (survey.confirmed_windows[w] && best != nullptr) {
+      SetSeen(requirement, *best, options);
     } else {
-      if (best[w] != nullptr) requirement.line = *best[w];
+      if (best != nullptr) requirement.line = *best;
       SetUnseen(requirement, EmptyBins(spectrum, curve, (*options.windows)[w], survey.lines),
                 spectrum.quadratures() == 2 && !spectrum.phase ? 2 : 1);
     }

@@ -9,8 +9,8 @@ namespace lastscan::engine {
 namespace {
 
 constexpr int kHalfTaps = 8;
-constexpr double kKaiserShape = 8.0;
-constexpr int kTableSteps = 512;  // per bin, read with linear interpolation
+constexpr double kKaiserShape = 11.0;  // the widest that half the bins' spacing lets in
+constexpr int kTableSteps = 512;       // per bin, read with linear interpolation
 
 // The windowed sinc for offsets 0..kHalfTaps bins.
 const std::array<double, kHalfTaps * kTableSteps + 2>& Kernel() {

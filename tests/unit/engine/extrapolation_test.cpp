@@ -70,13 +70,13 @@ class Promises {
 TEST(ChanceOfReading, ComesTrueAsOftenAsPromised) {
   // The truth drawn evenly over far more than one look can tell apart: a flat
   // prior, for which the chance is exact.
-  constexpr int kDraws = 20000;
+  constexpr int kDraws = 40000;
   constexpr double kScans = 64;
   Noise noise(152);
   Promises low;
   Promises high;
   for (int draw = 0; draw < kDraws; ++draw) {
-    const double truth = noise.Uniform(-20, 60);  // signal-to-noise at kScans
+    const double truth = noise.Uniform(-10, 45);  // signal-to-noise at kScans
     const double later = noise.Uniform(1, 8) * kScans;
     const double now = truth + noise.Next();
     const double w = now * std::sqrt(kScans);

@@ -11,6 +11,7 @@
 #include "engine/sensitivity/convention.h"
 #include "engine/spectrum/samples.h"
 #include "engine/spectrum/transform.h"
+#include "unit/engine/limits.h"
 #include "unit/engine/run_bench.h"
 
 namespace lastscan::engine {
@@ -140,17 +141,26 @@ std::vector<Sent> AsSpectra(std::vector<Sent> sent) {
 }
 
 TEST(RunAdvice, ARealPhasedSpectrumIsReadAsItIs) {
-  rehearsal::InventedSample sample = OneLine(2);
+  // Section 8 of the design: limits hold the truth in 93 % of runs at least.
+  rehearsal::InventedSample sample = OneLine(1.5);
   sample.lines[0].width_hz = 6;  // broad enough for samples 2 Hz apart
-  const std::vector<Sent> spectra = AsSpectra(Snapshots(sample, Every(64, 8), WindowGoal(500)));
-  const auto all = Played(spectra);
-  const v1::Advice& advice = all.back();
-  const double truth = 2 * std::sqrt(512.0);
-  EXPECT_TRUE(advice.limiting_line().confirmed());
-  EXPECT_NEAR(advice.limiting_line().shift_ppm(), 101.3, 0.02);
-  EXPECT_LE(advice.signal_to_noise().lower(), truth);
-  EXPECT_GE(advice.signal_to_noise().upper(), truth);
-  EXPECT_EQ(advice.lines_size(), 1);
+  const double truth = 1.5 * std::sqrt(256.0);
+  constexpr int kRuns = 200;
+  int inside = 0;
+  std::vector<Sent> spectra;
+  v1::Advice advice;
+  for (int run = 0; run < kRuns; ++run) {
+    spectra = AsSpectra(
+        Snapshots(sample, Every(64, 4), WindowGoal(500), static_cast<std::uint64_t>(run) + 1));
+    advice = Played(spectra).back();
+    ASSERT_TRUE(advice.limiting_line().confirmed());
+    ASSERT_NEAR(advice.limiting_line().shift_ppm(), 101.3, 0.02);
+    ASSERT_EQ(advice.lines_size(), 1);
+    inside += advice.signal_to_noise().lower() <= truth && truth <= advice.signal_to_noise().upper()
+                  ? 1
+                  : 0;
+  }
+  EXPECT_GE(inside, FewestHits(kRuns, 0.93));
   EXPECT_EQ(advice.matched_broadening_hz(), 0) << "of a spectrum nothing is known of the FID";
   // Sent the other way round it is the same spectrum.
   std::vector<Sent> rising = spectra;

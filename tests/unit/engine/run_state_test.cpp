@@ -59,13 +59,13 @@ TEST(RunState, TheSameSnapshotsGiveTheSameAdviceAndState) {
 }
 
 TEST(RunState, DoesNotGrowWithTheSnapshots) {
-  rehearsal::InventedSample sample = OneLine(0.2);
+  rehearsal::InventedSample sample = OneLine(2);
   sample.points = 256;
   engine::Run run(DefaultSettings());
   std::size_t early = 0;
   std::size_t late = 0;
   std::size_t count = 0;
-  for (const Sent& each : Snapshots(sample, Every(8, 1000), WindowGoal(50))) {
+  for (const Sent& each : Snapshots(sample, Every(8, 1000), WindowGoal(5000))) {
     Admit(run, each);
     const std::size_t bytes = run.Save().size();
     std::size_t& largest = ++count <= 250 ? early : late;

@@ -26,10 +26,10 @@ std::vector<Sent> Booked(std::vector<Sent> sent, double scans) {
 }
 
 TEST(RunVerdict, ABookingBoundsWhatIsAdvised) {
-  // Truth: 20 at 400 scans. The plan has 256, the booking room for 384.
+  // Truth: 22 at 484 scans. The plan has 256, the booking room for 384.
   rehearsal::InventedSample sample = OneLine(1);
   sample.scans_planned = 256;
-  const std::vector<Sent> sent = Snapshots(sample, Every(16, 14), WindowGoal(20));
+  const std::vector<Sent> sent = Snapshots(sample, Every(16, 14), WindowGoal(22), 3);
   bool extended = false;
   for (const v1::Advice& advice : Played(Booked(sent, 389))) {
     extended = extended || advice.verdict() == v1::EXTEND;

@@ -200,9 +200,22 @@ TEST(JcampDxReader, RefusesASpectrumThatLacksItsAxis) {
   SpectrumText flat;
   flat.axis.replace(flat.axis.find("980"), 3, "1020");
   EXPECT_THAT(Refused(flat.str()), HasSubstr("leave no distance between its points"));
-  SpectrumText frequency;
-  frequency.frequency = "";
-  EXPECT_THAT(Refused(frequency.str()), HasSubstr("the observe frequency is missing"));
+}
+
+TEST(JcampDxReader, ReadsWhatItCanWithoutObserveFrequency) {
+  SpectrumText spectrum;
+  spectrum.frequency = "";
+  const Recording hertz = Read(spectrum.str());
+  EXPECT_DOUBLE_EQ(hertz.snapshot.spectral_width_hz(), 50);
+  EXPECT_FALSE(hertz.has_centre_shift);
+  spectrum.axis.replace(spectrum.axis.find("HZ"), 2, "PPM");
+  EXPECT_THAT(Refused(spectrum.str()), HasSubstr("PPM without .OBSERVE FREQUENCY"));
+  FidText fid;
+  fid.more = "##.SHIFT REFERENCE= INTERNAL, none, 1, 12\n";
+  std::string text = fid.str();
+  text.replace(text.find(".OBSERVE FREQUENCY"), 18, "OTHER");
+  EXPECT_DOUBLE_EQ(Read(text).snapshot.spectral_width_hz(), 1000);
+  EXPECT_FALSE(Read(text).has_centre_shift);
 }
 
 TEST(JcampDxReader, DoesNotTrustPromisedCounts) {

@@ -96,7 +96,7 @@ TEST(Facts, ThatARunNeedsAreNamedWithTheirOption) {
   EXPECT_THAT(refused(), HasSubstr("a.dx: does not state the nucleus"));
   EXPECT_THAT(refused(), HasSubstr("--nucleus NAME"));
   snapshot.set_nucleus("13C");
-  EXPECT_THAT(refused(), HasSubstr(".OBSERVE FREQUENCY"));
+  EXPECT_THAT(refused(), HasSubstr("--observe-frequency MHZ"));
   snapshot.set_observe_frequency_mhz(100);
   EXPECT_THAT(refused(), HasSubstr("the spectral width"));
   snapshot.set_spectral_width_hz(20000);

@@ -184,6 +184,8 @@ TEST_F(SettingsTest, EveryMistakeNamesFileLineAndKey) {
        "event.begins_at: is no point in time"},
       {"a = 1\na = 2", "lab.toml:2: not TOML"},
       {"[service\n", "lab.toml:1: not TOML"},
+      {"a = i\n", "lab.toml:1: not TOML"},  // the parser quotes the line feed
+      {"\"a\\nb\" = 1", "lab.toml:1: \"a?b\": unknown key"},
       {std::string("a = \"\0\"", 7), "lab.toml:1: not TOML"},
   };
   for (const auto& [text, expected] : mistakes) {
