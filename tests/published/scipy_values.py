@@ -64,12 +64,12 @@ def chance_of_reading(threshold, reading, deviation, scans, later):
     return [chance / weights.sum() ** 2]
 
 
-def mixture_boundary(scans, rho, quadratures, level):
-    """Reading at which the evidence reaches `level`: the likelihood ratio against a blank is
+def mixture_boundary(rho, quadratures, level, *scans):
+    """Reading, after so many scans, at which the evidence reaches `level`: the likelihood ratio against a blank is
     averaged over normal drifts of variance 1/rho by quadrature, and the root found."""
-    n, rho, d, level = float(scans), float(rho), int(quadratures), float(level)
+    rho, d, level = float(rho), int(quadratures), float(level)
 
-    def evidence(z):
+    def evidence(z, n):
         b = z * np.sqrt(n)
         # One quadrature carries the reading, the other (if any) reads 0.
         def one(b_):
@@ -77,7 +77,8 @@ def mixture_boundary(scans, rho, quadratures, level):
             centre, width = b_ / (n + rho), (n + rho) ** -0.5
             return integrate.quad(f, centre - 12 * width, centre + 12 * width, limit=200)[0]
         return one(b) * (one(0.0) if d == 2 else 1.0)
-    return [optimize.brentq(lambda z: np.log(evidence(z) / level), 0.01, 15)]
+    return [optimize.brentq(lambda z, n=float(n): np.log(evidence(z, n) / level), 0.01, 15)
+            for n in scans]
 
 
 def unseen_quantiles(quadratures, *arguments):

@@ -86,17 +86,17 @@ TEST(StatisticsAgainstSciPy, ExpectedRange) {
 // Where the evidence for a line is 1 to a level: the engine has it in closed
 // form, SciPy averages likelihood ratios over the drifts.
 TEST(StatisticsAgainstSciPy, BoundaryOfTheMixtureEvidence) {
-  for (const int quadratures : {1, 2}) {
-    for (const double scans : {16.0, 64.0, 1024.0}) {
-      for (const double level : {100.0, 1e6}) {
-        const double expected =
-            SciPy("mixture_boundary",
-                  std::vector<std::string>{Argument(scans), Argument(4),
-                                           std::to_string(quadratures), Argument(level)})
-                .at(0);
-        const MixtureEvidence evidence(scans, 4, quadratures);
-        EXPECT_NEAR(evidence.ReadingAt(level), expected, 1e-6)
-            << quadratures << " quadratures, " << scans << " scans, level " << level;
+  const std::vector<double> scans = {16, 64, 1024};
+  for (const double quadratures : {1.0, 2.0}) {
+    for (const double level : {100.0, 1e6}) {
+      std::vector<double> arguments = {4, quadratures, level};
+      arguments.insert(arguments.end(), scans.begin(), scans.end());
+      const std::vector<double> expected = SciPy("mixture_boundary", arguments);
+      ASSERT_EQ(expected.size(), scans.size());
+      for (std::size_t i = 0; i < scans.size(); ++i) {
+        const MixtureEvidence evidence(scans[i], 4, static_cast<int>(quadratures));
+        EXPECT_NEAR(evidence.ReadingAt(level), expected[i], 1e-6)
+            << quadratures << " quadratures, " << scans[i] << " scans, level " << level;
       }
     }
   }

@@ -27,27 +27,33 @@ struct Density {
   std::vector<double> values;  // times its quadrature weight, once weighted
 };
 
-// Weights of the three grid points nearest to an end of the integral that lies
-// `over` cells beyond the last of them: the trapezoid with Gregory's end
-// correction, and the quadratic through the three points over the part beyond.
-// The density is cut off there, not zero, so the plain trapezoid would lose a
-// little of what crosses next, at each of hundreds of looks.
-void WeighEnd(double over, double& at_end, double& second, double& third) {
-  const double first_difference = 0.5 * over * over - 1.0 / 12;
-  const double second_difference = over * over * over / 6 + 0.25 * over * over - 1.0 / 24;
-  at_end *= 0.5 + over + first_difference + second_difference;
-  second *= 1 - first_difference - 2 * second_difference;
-  third *= 1 + second_difference;
+// Weighs the five grid points nearest to an end of the integral that lies `over`
+// cells beyond the last of them, `end`: the trapezoid with Gregory's end
+// correction, and the polynomial through the five points over the part beyond,
+// both in differences that reach `inward`. The density is cut off there, not
+// zero, so the plain trapezoid would lose a little of what crosses next, at
+// each of hundreds of looks.
+void WeighEnd(double over, double* end, std::ptrdiff_t inward) {
+  const double x = over;
+  const double first = x * x / 2 - 1.0 / 12;
+  const double second = x * x * (x / 6 + 1.0 / 4) - 1.0 / 24;
+  const double third = x * x * (x * x / 4 + x + 1) / 6 - 19.0 / 720;
+  const double fourth = x * x * (x * x * x / 5 + 1.5 * x * x + 11 * x / 3 + 3) / 24 - 3.0 / 160;
+  end[0] *= 0.5 + x + first + second + third + fourth;
+  end[inward] *= 1 - first - 2 * second - 3 * third - 4 * fourth;
+  end[2 * inward] *= 1 + second + 3 * third + 6 * fourth;
+  end[3 * inward] *= 1 - third - 4 * fourth;
+  end[4 * inward] *= 1 + fourth;
 }
 
 // Multiplies each value by its quadrature weight for the integral start..end.
 void Weigh(Density& density, double start, double end) {
   auto& v = density.values;
   const std::size_t last = v.size() - 1;
-  if (v.size() >= 6) {
+  if (v.size() >= 10) {
     const double last_place = density.first + static_cast<double>(last) * density.cell;
-    WeighEnd((end - last_place) / density.cell, v[last], v[last - 1], v[last - 2]);
-    WeighEnd((density.first - start) / density.cell, v[0], v[1], v[2]);
+    WeighEnd((end - last_place) / density.cell, &v[last], -1);
+    WeighEnd((density.first - start) / density.cell, &v[0], 1);
   }
   for (double& value : v) value *= density.cell;
 }
