@@ -65,8 +65,9 @@ def chance_of_reading(threshold, reading, deviation, scans, later):
 
 
 def mixture_boundary(rho, quadratures, level, *scans):
-    """Reading, after so many scans, at which the evidence reaches `level`: the likelihood ratio against a blank is
-    averaged over normal drifts of variance 1/rho by quadrature, and the root found."""
+    """Reading, after so many scans, at which the evidence reaches `level`: the likelihood ratio
+    against a blank is averaged over normal drifts of variance 1/rho by quadrature, and the root
+    found."""
     rho, d, level = float(rho), int(quadratures), float(level)
 
     def evidence(z, n):

@@ -56,10 +56,11 @@ std::vector<v1::Finding> Findings::Look(const v1::Snapshot& snapshot, const Obse
     const double ratio = seen.noise_of_increment / seen.noise_before.per_scan;
     const double limit = std::max(kStep, 6 * seen.deviation_of_increment);
     if (std::abs(ratio - 1) > limit) {
-      const bool follows = seen.relative_amplitude &&
-                           seen.amplitude_deviation < 0.2 * std::abs(ratio - 1) &&
-                           std::abs(*seen.relative_amplitude - ratio) <
-                               std::max(4 * seen.amplitude_deviation, 0.05 * ratio);
+      // The amplitude was read in the increment's own noise, not that of before.
+      const double deviation = seen.amplitude_deviation * ratio;
+      const bool follows =
+          seen.relative_amplitude && deviation < 0.2 * std::abs(ratio - 1) &&
+          std::abs(*seen.relative_amplitude - ratio) < std::max(4 * deviation, 0.05 * ratio);
       if (follows) {
         Stand(Make(v1::GAIN_CHANGE, v1::HIGH, since,
                    "signal and noise of one scan changed together by a factor of " +

@@ -1,6 +1,7 @@
 #include "engine/forecast/stop_boundary.h"
 
 #include <algorithm>
+#include <array>
 #include <boost/math/distributions/normal.hpp>
 #include <boost/math/tools/toms748_solve.hpp>
 #include <cmath>
@@ -12,6 +13,7 @@ namespace {
 
 constexpr double kReach = 7.5;        // standard deviations kept of a density
 constexpr double kNegligible = 1e-9;  // crossings rarer than this are none
+constexpr double kStepReach = 7;      // and of the density of one step
 constexpr double kCellsPerStep = 3;   // grid cells per deviation of one step
 constexpr double kLimitStep = 1.02;
 constexpr int kMostLooksPower = 11;
@@ -20,42 +22,83 @@ double UpperTail(double z) {
   return boost::math::cdf(boost::math::complement(boost::math::normal(), z));
 }
 
-// A density on an even grid up to an absorbing end that falls inside a cell.
+// A density on an even grid that ends where the motion is absorbed.
 struct Density {
   double first = 0;
   double cell = 0;
   std::vector<double> values;  // times its quadrature weight, once weighted
+
+  double At(std::size_t i) const { return first + static_cast<double>(i) * cell; }
 };
 
-// Weighs the five grid points nearest to an end of the integral that lies `over`
-// cells beyond the last of them, `end`: the trapezoid with Gregory's end
-// correction, and the polynomial through the five points over the part beyond,
-// both in differences that reach `inward`. The density is cut off there, not
-// zero, so the plain trapezoid would lose a little of what crosses next, at
-// each of hundreds of looks.
-void WeighEnd(double over, double* end, std::ptrdiff_t inward) {
-  const double x = over;
-  const double first = x * x / 2 - 1.0 / 12;
-  const double second = x * x * (x / 6 + 1.0 / 4) - 1.0 / 24;
-  const double third = x * x * (x * x / 4 + x + 1) / 6 - 19.0 / 720;
-  const double fourth = x * x * (x * x * x / 5 + 1.5 * x * x + 11 * x / 3 + 3) / 24 - 3.0 / 160;
-  end[0] *= 0.5 + x + first + second + third + fourth;
-  end[inward] *= 1 - first - 2 * second - 3 * third - 4 * fourth;
-  end[2 * inward] *= 1 + second + 3 * third + 6 * fourth;
-  end[3 * inward] *= 1 - third - 4 * fourth;
-  end[4 * inward] *= 1 + fourth;
+// An even grid over low..high, of cells of about `cell`. Its last point lies on
+// `high` and, where `both`, its first on `low`: there the density is cut off.
+Density GridOver(double low, double high, double cell, bool both) {
+  const double cells = (high - low) / cell;
+  Density grid;
+  grid.cell = both ? cell * cells / std::ceil(cells) : cell;
+  const auto count = static_cast<std::size_t>(both ? std::ceil(cells) : std::floor(cells)) + 1;
+  grid.first = high - static_cast<double>(count - 1) * grid.cell;
+  grid.values.resize(count);
+  return grid;
 }
 
-// Multiplies each value by its quadrature weight for the integral start..end.
-void Weigh(Density& density, double start, double end) {
+// Multiplies each value by its quadrature weight: the trapezoid with Gregory's
+// end correction to the fourth difference. The density is cut off at its end,
+// not zero, so the plain trapezoid would lose a little of what crosses next, at
+// each of hundreds of looks.
+void Weigh(Density& density) {
+  constexpr std::array kEnd = {95.0 / 288, 317.0 / 240, 23.0 / 30, 793.0 / 720, 157.0 / 160};
   auto& v = density.values;
   const std::size_t last = v.size() - 1;
-  if (v.size() >= 10) {
-    const double last_place = density.first + static_cast<double>(last) * density.cell;
-    WeighEnd((end - last_place) / density.cell, &v[last], -1);
-    WeighEnd((density.first - start) / density.cell, &v[0], 1);
+  if (v.size() >= 2 * kEnd.size()) {
+    for (std::size_t i = 0; i < kEnd.size(); ++i) {
+      v[i] *= kEnd[i];
+      v[last - i] *= kEnd[i];
+    }
+  } else {
+    v[0] *= 0.5;
+    v[last] *= 0.5;
   }
   for (double& value : v) value *= density.cell;
+}
+
+// Where a motion that is at `before` moves to in a step of mean `shift`.
+void Move(const Density& before, double shift, double deviation, Density& after) {
+  const double scale = 1 / (deviation * std::sqrt(2 * std::numbers::pi));
+  const auto count = static_cast<std::ptrdiff_t>(after.values.size());
+  const auto count_before = static_cast<std::ptrdiff_t>(before.values.size());
+  if (before.cell != after.cell) {
+    for (std::size_t i = 0; i < after.values.size(); ++i) {
+      double value = 0;
+      for (std::size_t j = 0; j < before.values.size(); ++j) {
+        const double z = (after.At(i) - before.At(j) - shift) / deviation;
+        if (std::abs(z) < kStepReach) value += before.values[j] * std::exp(-0.5 * z * z);
+      }
+      after.values[i] = value * scale;
+    }
+    return;
+  }
+  // Cells of one size: the density of a step depends on i - j alone.
+  const double origin = (after.first - before.first - shift) / before.cell;
+  const double reach = kStepReach * deviation / before.cell;
+  const auto first = static_cast<std::ptrdiff_t>(std::ceil(-reach - origin));
+  const auto last = static_cast<std::ptrdiff_t>(std::floor(reach - origin));
+  std::vector<double> kernel;
+  for (std::ptrdiff_t d = first; d <= last; ++d) {
+    const double z = (origin + static_cast<double>(d)) * before.cell / deviation;
+    kernel.push_back(scale * std::exp(-0.5 * z * z));
+  }
+  for (std::ptrdiff_t i = 0; i < count; ++i) {
+    const std::ptrdiff_t from = std::max<std::ptrdiff_t>(0, i - last);
+    const std::ptrdiff_t to = std::min(count_before - 1, i - first);
+    double value = 0;
+    for (std::ptrdiff_t j = from; j <= to; ++j) {
+      value += before.values[static_cast<std::size_t>(j)] *
+               kernel[static_cast<std::size_t>(i - j - first)];
+    }
+    after.values[static_cast<std::size_t>(i)] = value;
+  }
 }
 
 }  // namespace
@@ -70,7 +113,8 @@ double CrossingProbability(std::span<const double> times, std::span<const double
     const double root = std::sqrt(t);
     const double bound = upper[k] * root;
     const double mean = drift * t;
-    if (density.values.empty()) {
+    const bool free = density.values.empty();
+    if (free) {
       // Until a crossing is thinkable the motion is plainly normal.
       const double above = UpperTail((bound - mean) / root);
       const double below = two_sided ? UpperTail((bound + mean) / root) : 0;
@@ -80,76 +124,32 @@ double CrossingProbability(std::span<const double> times, std::span<const double
     const double low = two_sided ? std::max(-bound, mean - kReach * root) : mean - kReach * root;
     const double high = std::min(bound, mean + kReach * root);
     if (low >= high) return crossed;
-    const double step = k + 1 < times.size() ? std::sqrt(times[k + 1] - t) : root;
     // The last step has left its mark at the boundary: what crossed is missing
     // there, over about one deviation of that step.
-    const double last_step = density.values.empty() ? root : std::sqrt(t - previous);
-    // Evenly spaced looks share one grid, rounding apart: see same_grid below.
+    const double last_step = free ? root : std::sqrt(t - previous);
+    const double step = k + 1 < times.size() ? std::sqrt(times[k + 1] - t) : root;
     double cell = std::min(step, last_step) / kCellsPerStep;
+    // Evenly spaced looks share one size of cell, rounding apart.
     if (std::abs(cell - density.cell) < 1e-6 * cell) cell = density.cell;
-    Density next;
-    next.cell = cell;
-    next.first = std::ceil(low / cell) * cell;
-    const auto count = static_cast<std::size_t>(std::floor((high - next.first) / cell)) + 1;
-    next.values.resize(count);
-    if (density.values.empty()) {
-      for (std::size_t i = 0; i < count; ++i) {
-        const double x = next.first + static_cast<double>(i) * cell;
-        const double z = (x - mean) / root;
+    Density next = GridOver(low, high, cell, two_sided);
+    if (free) {
+      for (std::size_t i = 0; i < next.values.size(); ++i) {
+        const double z = (next.At(i) - mean) / root;
         next.values[i] = std::exp(-0.5 * z * z) / (root * std::sqrt(2 * std::numbers::pi));
       }
     } else {
-      const double dt = t - previous;
-      const double deviation = std::sqrt(dt);
-      const double scale = 1 / (deviation * std::sqrt(2 * std::numbers::pi));
-      const double shift = drift * dt;
+      const double shift = drift * (t - previous);
       // What crosses at this look, from each place the motion could be at.
       for (std::size_t i = 0; i < density.values.size(); ++i) {
-        const double x = density.first + static_cast<double>(i) * density.cell;
-        if (density.values[i] < 1e-14) continue;
-        const double above = (bound - x - shift) / deviation;
-        if (above < 8) crossed += density.values[i] * UpperTail(above);
-        if (two_sided) {
-          const double below = (x + shift + bound) / deviation;
-          if (below < 8) crossed += density.values[i] * UpperTail(below);
-        }
+        const double above = (bound - density.At(i) - shift) / last_step;
+        if (above < kStepReach) crossed += density.values[i] * UpperTail(above);
+        if (!two_sided) continue;
+        const double below = (density.At(i) + shift + bound) / last_step;
+        if (below < kStepReach) crossed += density.values[i] * UpperTail(below);
       }
-      // On one grid the transition depends on the distance alone.
-      const bool same_grid = cell == density.cell;
-      std::vector<double> kernel;
-      const auto offset =
-          static_cast<std::ptrdiff_t>(std::llround((next.first - density.first) / density.cell));
-      const auto reach = static_cast<std::ptrdiff_t>(8 * deviation / density.cell) + 1;
-      const auto centre = static_cast<std::ptrdiff_t>(std::llround(shift / density.cell));
-      if (same_grid) {
-        for (std::ptrdiff_t d = centre - reach; d <= centre + reach; ++d) {
-          const double z = (static_cast<double>(d) * cell - shift) / deviation;
-          kernel.push_back(scale * std::exp(-0.5 * z * z));
-        }
-      }
-      const auto before = static_cast<std::ptrdiff_t>(density.values.size());
-      for (std::size_t i = 0; i < count; ++i) {
-        const double x = next.first + static_cast<double>(i) * cell;
-        double value = 0;
-        if (same_grid) {
-          const std::ptrdiff_t middle = static_cast<std::ptrdiff_t>(i) + offset - centre;
-          const std::ptrdiff_t from = std::max<std::ptrdiff_t>(0, middle - reach);
-          const std::ptrdiff_t to = std::min(before - 1, middle + reach);
-          for (std::ptrdiff_t j = from; j <= to; ++j) {
-            value += density.values[static_cast<std::size_t>(j)] *
-                     kernel[static_cast<std::size_t>(middle + reach - j)];
-          }
-        } else {
-          for (std::size_t j = 0; j < density.values.size(); ++j) {
-            const double z =
-                (x - density.first - static_cast<double>(j) * density.cell - shift) / deviation;
-            if (std::abs(z) < 8) value += density.values[j] * scale * std::exp(-0.5 * z * z);
-          }
-        }
-        next.values[i] = value;
-      }
+      Move(density, shift, last_step, next);
     }
-    Weigh(next, low, high);
+    Weigh(next);
     density = std::move(next);
     previous = t;
   }

@@ -71,6 +71,27 @@ TEST(AmplitudeHistory, AnIncrementIsAsSureAsItSays) {
   EXPECT_LT(squares, HighestChiSquare(kDraws));
 }
 
+TEST(AmplitudeHistory, ANoisyReferenceDoesNotMakeItReadLow) {
+  // The reference holds noise, which would pass for signal that then is missing.
+  constexpr int kDraws = 2000;
+  double sum = 0;
+  double squares = 0;
+  for (int draw = 0; draw < kDraws; ++draw) {
+    AmplitudeHistory history;
+    Accumulation accumulation(1, 4000 + draw);
+    accumulation.Add(history, 50, 1);  // two lines of 7 rms: 10 together
+    const double read = accumulation.Add(history, 50, 1);
+    sum += read;
+    squares += read * read;
+  }
+  const double mean = sum / kDraws;
+  const double error = std::sqrt((squares / kDraws - mean * mean) / kDraws);
+  // With x the noise along the reference over its height, variance 1/98, the
+  // mean of (1 + x)/(1 + 2 x) is 1 + 2/98. Were the noise's own power, 4/98,
+  // left in the reference, it would be as much below 1.
+  EXPECT_NEAR(mean, 1 + 2.0 / 98, 3.29 * error);
+}
+
 TEST(AmplitudeHistory, ALossIsFoundWhereItBegan) {
   for (const double loss : {0.2, 0.4}) {
     AmplitudeHistory history;

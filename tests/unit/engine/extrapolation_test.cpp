@@ -99,17 +99,17 @@ TEST(ChanceOfReading, NoMoreScansNoMoreChance) {
 }
 
 TEST(ChanceOfReading, OfALineNotSeenYetComesTrueAsOftenAsPromised) {
-  // A line of any strength from 0 to 9 in one of 200 bins, read where it truly
+  // A line of any strength from 0 to 9 in one of 60 bins, read where it truly
   // is later; promised from all bins alike.
-  constexpr int kDraws = 3000;
+  constexpr int kDraws = 10000;
   Noise noise(153);
   Promises promises;
   for (int draw = 0; draw < kDraws; ++draw) {
     const double truth = noise.Uniform(0, 9);
     std::vector<float> readings;
-    for (int j = 0; j < 200; ++j) readings.push_back(static_cast<float>(noise.Next()));
-    const double now = truth + readings[77];
-    readings[77] = static_cast<float>(now);
+    for (int j = 0; j < 60; ++j) readings.push_back(static_cast<float>(noise.Next()));
+    const double now = truth + readings[17];
+    readings[17] = static_cast<float>(now);
     const auto posterior = AmplitudePosterior::OfUnseen(readings, 1);
     const double later = noise.Uniform(1.5, 6);
     const double then =

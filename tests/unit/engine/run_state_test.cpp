@@ -134,5 +134,19 @@ TEST(RunState, OtherDefaultsThanItBeganWithDoNotMixSpectra) {
               HasSubstr("broadening of run 'night 1' changed from 1 to 5 Hz"));
 }
 
+TEST(RunState, AnotherDefaultGoalIsJudgedAfresh) {
+  v1::Goal open = WindowGoal(20);
+  open.clear_target();
+  const std::vector<Sent> sent = Snapshots(OneLine(2), Every(32, 6), open);
+  engine::Run run(DefaultSettings());
+  for (std::size_t i = 0; i + 1 < sent.size(); ++i) Admit(run, sent[i]);
+  ASSERT_EQ(run.advice().verdict(), v1::ENOUGH) << "the default asks for 10";
+  v1::EngineSettings changed = DefaultSettings();
+  for (auto& nucleus : *changed.mutable_nuclei()) nucleus.mutable_goal()->set_target(300);
+  engine::Run loaded = engine::Run::Load(changed, run.Save());
+  EXPECT_NE(Admit(loaded, sent.back()).verdict(), v1::ENOUGH);
+  EXPECT_EQ(loaded.advice().goal().target(), 300);
+}
+
 }  // namespace
 }  // namespace lastscan::engine
