@@ -96,7 +96,7 @@ TEST(SvgFigure, ARunThatLeavesTheLawIsNotStraight) {
   const Svg svg(figure);
   const auto [x0, y0] = svg.Origin();
   const std::vector<pugi::xml_node> discs = svg.OfClass("reading");
-  const auto steepness = [&](const pugi::xml_node& disc) {
+  const auto steepness = [x0 = x0, y0 = y0](const pugi::xml_node& disc) {
     return (y0 - disc.attribute("cy").as_double()) / (disc.attribute("cx").as_double() - x0);
   };
   EXPECT_GT(steepness(discs.front()), 1.5 * steepness(discs.back()));

@@ -109,7 +109,9 @@ TEST(CheckGoal, SaysWhatIsWrongWhereAndWhatToDo) {
                       HasSubstr("give 0 or more")));
   }
   const std::pair<double, double> no_ranges[] = {{60, 50}, {50, 50}, {kNaN, 50}, {50, kInfinity}};
-  for (const auto& [low, high] : no_ranges) {
+  for (const auto& range : no_ranges) {
+    const double low = range.first;
+    const double high = range.second;
     EXPECT_THAT(refused([&](v1::Goal& goal) { AddWindow(goal, low, high); }),
                 AllOf(HasSubstr("window"), HasSubstr("give the lower shift first")));
     EXPECT_THAT(refused([&](v1::Goal& goal) { *goal.add_excluded() = ShiftsFrom(low, high); }),
