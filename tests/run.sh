@@ -44,6 +44,9 @@ finish() {
   fi
 }
 trap finish EXIT
+# Broken off by a signal: say so by the exit code, or it would look like a success.
+trap 'exit 130' INT
+trap 'exit 143' TERM HUP
 
 say() { printf '\n== %s\n' "$*"; }
 

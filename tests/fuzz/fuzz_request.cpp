@@ -3,6 +3,7 @@
 // how many frames follow, then each frame with its length in two bytes; a third
 // of the inputs has its first frame wrapped as a snapshot of the right size, so
 // that the engine is reached too.
+#include <google/protobuf/stubs/logging.h>
 #include <spdlog/spdlog.h>
 
 #include <algorithm>
@@ -93,6 +94,7 @@ std::string Wrapped(std::string_view patch, std::size_t& bytes) {
 
 extern "C" int LLVMFuzzerInitialize(int*, char***) {
   spdlog::set_level(spdlog::level::off);
+  google::protobuf::SetLogHandler(nullptr);  // as the daemon does
   return 0;
 }
 

@@ -39,9 +39,11 @@ double ChanceOfReading(double threshold, const AmplitudePosterior& unseen, doubl
                        double later) {
   if (later <= scans) return 0;
   const double ratio = later / scans;
+  // The later reading holds the noise of now, thinned, and the noise to come.
   const double deviation = std::sqrt(1 - 1 / ratio);
-  return unseen.Expect([&](double truth) {
-    return ProbabilityBelow((truth * std::sqrt(ratio) - threshold) / deviation);
+  return unseen.Expect([&](double truth, double reading) {
+    const double centre = truth * std::sqrt(ratio) + (reading - truth) / std::sqrt(ratio);
+    return ProbabilityBelow((centre - threshold) / deviation);
   });
 }
 

@@ -79,6 +79,14 @@ AmplitudePosterior AmplitudePosterior::OfUnseen(std::span<const float> readings,
     }
     logs.push_back(reference - 0.5 * a * a + std::log(std::max(sum, 1e-300)));
   }
+  // The mean of X_j weighted with exp(a X_j) is the slope of the logarithm of
+  // the sum (with I0, the mean of what lies in phase).
+  for (std::size_t i = 0; i < logs.size(); ++i) {
+    const std::size_t above = std::min(i + 1, logs.size() - 1);
+    const std::size_t below = i == 0 ? 0 : i - 1;
+    const double slope = (logs[above] - logs[below]) / (static_cast<double>(above - below) * kStep);
+    posterior.readings_.push_back(0.5 * static_cast<double>(above + below) * kStep + slope);
+  }
   const double most = *std::max_element(logs.begin(), logs.end());
   for (double value : logs) posterior.density_.push_back(std::exp(value - most));
   posterior.Normalise();
@@ -109,6 +117,15 @@ double AmplitudePosterior::Expect(const std::function<double(double)>& value) co
   double sum = 0;
   for (std::size_t i = 0; i < density_.size(); ++i) {
     if (density_[i] > 1e-12) sum += density_[i] * value(first_ + static_cast<double>(i) * step_);
+  }
+  return sum;
+}
+
+double AmplitudePosterior::Expect(const std::function<double(double, double)>& value) const {
+  double sum = 0;
+  for (std::size_t i = 0; i < density_.size(); ++i) {
+    if (density_[i] < 1e-12) continue;
+    sum += density_[i] * value(first_ + static_cast<double>(i) * step_, readings_[i]);
   }
   return sum;
 }

@@ -30,6 +30,11 @@ class AmplitudePosterior {
   // Mean of `value` over the density.
   double Expect(const std::function<double(double)>& value) const;
 
+  // The same of a value that depends on what the line reads now, too: called
+  // with the true signal-to-noise and the mean reading at the places where a
+  // line so strong would hide. REQUIRES: made by OfUnseen.
+  double Expect(const std::function<double(double, double)>& value) const;
+
  private:
   void Normalise();
 
@@ -37,6 +42,7 @@ class AmplitudePosterior {
   double step_ = 0;
   std::vector<double> density_;     // per grid point, sums to 1
   std::vector<double> cumulative_;  // up to the middle of each point's cell
+  std::vector<double> readings_;    // OfUnseen: mean reading of a line so strong
 };
 
 }  // namespace lastscan::engine

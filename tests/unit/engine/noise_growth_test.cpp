@@ -11,11 +11,18 @@
 namespace lastscan::engine {
 namespace {
 
+// Marks of an accumulation: each holds the scans of those before it, so its error
+// is theirs with a correlation of n/m, and new for the rest.
 NoiseGrowth Grown(double exponent, double relative_deviation, Noise& noise) {
   NoiseGrowth growth;
+  double error = 0;
+  double before = 0;
   for (double scans = 16; scans < 20000; scans += 16) {
     if (!growth.Wants(scans)) continue;
-    growth.Add(scans, 5 * std::pow(scans, exponent) * (1 + relative_deviation * noise.Next()),
+    const double shared = before / scans;
+    error = shared * error + std::sqrt(1 - shared * shared) * noise.Next();
+    before = scans;
+    growth.Add(scans, 5 * std::pow(scans, exponent) * (1 + relative_deviation * error),
                relative_deviation);
   }
   return growth;
@@ -40,7 +47,7 @@ TEST(NoiseGrowth, LimitsHoldTheExponentNineteenTimesInTwenty) {
     inside += found.lower() <= 0.5 && 0.5 <= found.upper() ? 1 : 0;
   }
   EXPECT_GE(inside, FewestHits(kDraws, 0.95));
-  EXPECT_LE(inside, MostHits(kDraws, 0.95)) << "independent marks: the limits are exact";
+  EXPECT_LE(inside, MostHits(kDraws, 0.95)) << "normal errors: the limits are exact";
 }
 
 TEST(NoiseGrowth, SaysNothingFromFewerThanThreeMarks) {

@@ -45,7 +45,7 @@ OutlookQuestion Question(double target = 10) {
   return question;
 }
 
-// The reading of section 5.7: at the target, and so far above nine tenths of it.
+// The reading that the stop rule asks for: at the target, and so far above nine tenths of it.
 double Threshold(const OutlookQuestion& question, double deviation = 1) {
   const double limit = question.target * (1 - question.tolerance);
   return std::max(

@@ -163,7 +163,7 @@ TEST(ReadingOf, LimitsHoldTheTruthNineteenTimesInTwenty) {
     }
     EXPECT_GE(inside, FewestHits(kDraws, 0.95)) << truth;
     EXPECT_LE(inside, MostHits(kDraws, 0.95)) << truth;
-    EXPECT_LT(std::abs(mean / truth - 1), 0.02) << "section 8: bias of the reading";
+    EXPECT_LT(std::abs(mean / truth - 1), 0.02) << "bias of the reading";
   }
 }
 

@@ -141,7 +141,7 @@ std::vector<Sent> AsSpectra(std::vector<Sent> sent) {
 }
 
 TEST(RunAdvice, ARealPhasedSpectrumIsReadAsItIs) {
-  // Section 8 of the design: limits hold the truth in 93 % of runs at least.
+  // We claim: limits hold the truth in 93 % of runs at least.
   rehearsal::InventedSample sample = OneLine(1.5);
   sample.lines[0].width_hz = 6;  // broad enough for samples 2 Hz apart
   const double truth = 1.5 * std::sqrt(256.0);

@@ -22,7 +22,7 @@ std::optional<std::uint64_t> ToldAt(const std::vector<v1::Advice>& advice, v1::F
 }
 
 // The share of a study in which a fault is told after it began, before the end.
-// Section 8 of the design asks for 95 %.
+// We claim 95 %.
 template <typename Spoil>
 int Told(int runs, v1::FindingKind kind, Spoil spoil) {
   int told = 0;
