@@ -37,9 +37,8 @@ std::optional<double> OnsetOfFid(std::span<const std::complex<double>> fid, doub
 // The phase model that the lines support, or nothing when they do not settle
 // it: too few or too weak lines, two delays that explain them equally well, or
 // lines that follow no common phase. `given_delay` is the snapshot's, when it
-// gives one; `onset` narrows the search. `zero_delay` is tried where neither is
-// known. Fit: maximum of sum (z^2/2) cos(residual), the von Mises likelihood of
-// phases with variance 2/z^2.
+// gives one; `onset` narrows the search. Fit: maximum of sum (z^2/2) cos(residual), the von Mises
+// likelihood of phases with variance 2/z^2.
 std::optional<PhaseModel> FitPhase(const Axis& axis, std::span<const LinePhase> lines,
                                    std::optional<double> given_delay, std::optional<double> onset);
 
