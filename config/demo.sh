@@ -11,7 +11,7 @@ set -euo pipefail
 
 here=$(cd "$(dirname "${BASH_SOURCE[0]}")" && pwd)
 root=$(dirname "$here")
-build=${LASTSCAN_BUILD:-$root/build}
+build=$(realpath -m "${LASTSCAN_BUILD:-$root/build}")
 keep=no
 for argument in "$@"; do
   case "$argument" in

@@ -14,7 +14,7 @@ set -euo pipefail
 
 here=$(cd "$(dirname "${BASH_SOURCE[0]}")" && pwd)
 root=$(dirname "$here")
-build=${LASTSCAN_BUILD:-$root/build}
+build=$(realpath -m "${LASTSCAN_BUILD:-$root/build}")
 fuzz_seconds=${LASTSCAN_FUZZ_SECONDS:-40}
 mode=plain
 case "${1:-}" in

@@ -37,8 +37,9 @@ class DaemonTest : public DaemonBench {
   // True if `err` is one line that begins with the program's name and mentions `what`.
   static ::testing::AssertionResult IsOneLine(const std::string& err, const std::string& what) {
     // Whatever was logged before the error is another matter.
-    const std::string line = err.substr(err.find("lastscand: "));
-    if (err.find("lastscand: ") != std::string::npos && line.find('\n') == line.size() - 1 &&
+    const std::size_t begins = err.find("lastscand: ");
+    const std::string line = begins == std::string::npos ? "" : err.substr(begins);
+    if (!line.empty() && line.find('\n') == line.size() - 1 &&
         line.find(what) != std::string::npos) {
       return ::testing::AssertionSuccess();
     }
