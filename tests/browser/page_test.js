@@ -176,9 +176,10 @@ async function followVerdicts(page) {
         {childList: true, subtree: true});
     look();
   });
+  // Slow enough that a verdict of the first three looks stands for some seconds.
   const rehearsals = ["strong-sample", "on-course", "needs-more", "hopeless", "lock-lost"]
       .map((name) => start("lastscan", "rehearse", "--scenario", name, "--obey", "--feed",
-          "--pace", "0.3", "--at", at));
+          "--pace", "1.5", "--at", at));
   try {
     await until("all verdicts were shown", 120, () => page.evaluate(
         (wanted) => wanted.every((word) => window.shown.has(word)), verdicts));
