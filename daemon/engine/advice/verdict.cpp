@@ -12,8 +12,8 @@ namespace {
 // Chance of meeting the goal by the plan at which a run is on course, and the
 // one below which a run that was on course no longer is (and the other way).
 constexpr double kEvenChance = 0.5;
-constexpr double kLeaveCourse = 0.3;
-constexpr double kRejoinCourse = 0.7;
+constexpr double kLeaveCourse = 0.2;
+constexpr double kRejoinCourse = 0.8;
 // A run out of reach comes back only when its chance has doubled.
 constexpr double kReturnFactor = 2;
 

@@ -72,12 +72,12 @@ TEST(Judge, AVerdictNeedsMoreToTurnBackThanItNeededToTurn) {
     facts.outlook.chance_by_plan = by_plan;
     return Judge(facts, {});
   };
-  for (const double chance : {0.35, 0.5, 0.65}) {
+  for (const double chance : {0.25, 0.5, 0.75}) {
     EXPECT_EQ(at(v1::ON_COURSE, chance), v1::ON_COURSE);
     EXPECT_EQ(at(v1::EXTEND, chance), v1::EXTEND);
   }
-  EXPECT_EQ(at(v1::ON_COURSE, 0.2), v1::EXTEND);
-  EXPECT_EQ(at(v1::EXTEND, 0.8), v1::ON_COURSE);
+  EXPECT_EQ(at(v1::ON_COURSE, 0.15), v1::EXTEND);
+  EXPECT_EQ(at(v1::EXTEND, 0.85), v1::ON_COURSE);
   facts.outlook.chance_by_booking = 0.07;
   EXPECT_EQ(at(v1::OUT_OF_REACH, 0.01), v1::OUT_OF_REACH);
   EXPECT_EQ(at(v1::EXTEND, 0.01), v1::EXTEND);
