@@ -150,7 +150,6 @@ v1::Advice Assemble(Matter& matter) {
   Wording wording;
   wording.advice = &advice;
   wording.limiting_event = matter.limiting_event;
-  wording.factor = matter.factor;
   advice.set_because(Because(facts, wording));
   return advice;
 }

@@ -55,6 +55,11 @@ std::string SoFar(const v1::Advice& advice) {
          Rounded(advice.signal_to_noise().upper());
 }
 
+// No forecast is certain.
+std::string ChanceInWords(double chance) {
+  return chance > 0.999 ? "over 99.9 %" : Percent(chance);
+}
+
 std::string Capital(std::string text) {
   if (!text.empty() && text[0] >= 'a' && text[0] <= 'z')
     text[0] = static_cast<char>(text[0] - 'a' + 'A');
@@ -63,8 +68,7 @@ std::string Capital(std::string text) {
 
 std::string BookingEnd(const Case& facts, const Wording& wording) {
   if (!wording.limiting_event.empty()) return wording.limiting_event;
-  return facts.has_booking ? "the booking's end"
-                           : "the longest extension allowed without a booking";
+  return facts.has_booking ? "the booking's end" : "the longest extension that the settings allow";
 }
 
 std::string Until(const v1::Advice& advice) {
@@ -175,7 +179,7 @@ std::string Because(const Case& facts, const Wording& wording) {
                 " scans" + Until(advice);
       }
       text += ". Chance by " + BookingEnd(facts, wording) + ": " +
-              Percent(advice.chance_by_booking_end()) + ".";
+              ChanceInWords(advice.chance_by_booking_end()) + ".";
       return text;
     }
     case v1::OUT_OF_REACH: {
@@ -183,7 +187,8 @@ std::string Because(const Case& facts, const Wording& wording) {
       return so_far + "; by " + BookingEnd(facts, wording) + ", at " + Scans(facts.booked) +
              " scans, it would reach " + (confirmed ? "about " : "at most ") +
              Rounded(AtBookingEnd(facts, advice)) + ", and the chance of " + Target(advice) +
-             " is " + Percent(advice.chance_by_booking_end()) + ". " + WhatWouldHelp(facts, advice);
+             " is " + ChanceInWords(advice.chance_by_booking_end()) + ". " +
+             WhatWouldHelp(facts, advice);
     }
     case v1::INSPECT: {
       std::string text = "Look at the instrument: ";

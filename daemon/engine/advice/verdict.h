@@ -28,11 +28,10 @@ struct Case {
 // one value to cross and a harder one to cross back.
 v1::Verdict Judge(const Case& facts, const std::vector<v1::Finding>& findings);
 
-// What the sentence needs besides the case; all ratios in the goal's convention.
+// What the sentence needs besides the case.
 struct Wording {
   v1::Advice* advice = nullptr;  // filled in but for `because`
   std::string limiting_event;    // site event that ends the booking, if one does
-  double factor = 1;             // goal's convention over height to rms
 };
 
 std::string Because(const Case& facts, const Wording& wording);
